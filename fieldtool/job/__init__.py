@@ -1,0 +1,1 @@
+"""What people entered: the models of one visit, and the changes made to them."""

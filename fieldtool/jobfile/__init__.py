@@ -1,0 +1,1 @@
+"""The job on disk: one file, written whole, never in place."""

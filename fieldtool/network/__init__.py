@@ -1,0 +1,1 @@
+"""Resistors: a circuit's conductors as networks, solved by nodal analysis."""

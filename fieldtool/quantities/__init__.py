@@ -1,0 +1,1 @@
+"""What a person types and reads: the grammar of entries, units and formatting."""

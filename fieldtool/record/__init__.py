@@ -1,0 +1,1 @@
+"""Paper: the record of a visit in sections, as HTML, PDF and CSV."""

@@ -1,0 +1,1 @@
+"""What the books say: published tables as data, each figure with its provenance."""

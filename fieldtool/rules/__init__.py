@@ -1,0 +1,1 @@
+"""What is demanded: limits, facts and the catalogue of rules."""

@@ -1,0 +1,1 @@
+"""What now: isolation state, tasks and the next safe step."""
