@@ -19,7 +19,6 @@ from fieldtool.answers import (
     EntryRemark,
     Mark,
     Missing,
-    NextStep,
     StateView,
     Verdict,
     WayAnswer,
@@ -283,7 +282,7 @@ class Visit:
             if isinstance(entry, EntryProblem):
                 return Entered(False, entry.sentence)
             values |= {"value": entry.value, "sign": entry.sign}
-            remark = self._remark(cell, entry.value, entry.sign)
+            remark = self.remark(cell, entry.value, entry.sign)
             if entry.unlikely and not (remark is not None and remark.doubt):
                 remark = EntryRemark(entry.unlikely, doubt=True)
         before = self.standing(cell, probes)
@@ -315,7 +314,8 @@ class Visit:
             return Entered(False, problem)
         return Entered(True, remark.sentence if remark is not None else "", remark, reading)
 
-    def _remark(self, cell: Cell, value: float | None, sign: str) -> EntryRemark | None:
+    def remark(self, cell: Cell, value: float | None, sign: str) -> EntryRemark | None:
+        """What is likely in a cell, and what is said of a value there."""
         from fieldtool.diagnosis.entry_check import remark
 
         circuit, point, test, stage = cell
@@ -323,7 +323,7 @@ class Visit:
 
     def expect(self, cell: Cell) -> str:
         """What a reading here is likely to be, before it is typed; empty where nothing can be said."""
-        said = self._remark(cell, None, "=")
+        said = self.remark(cell, None, "=")
         return said.expect if said is not None else ""
 
     def _again(self, reading: Reading, why: str, **values: Any) -> str:
@@ -527,6 +527,25 @@ class Visit:
             ),
         )
 
+    def has_ways(self, request_id: str) -> bool:
+        """True where the ways of a request are already worked out for the job as it stands."""
+        return ("ways", request_id) in self._memo
+
+    def asks(self, request_id: str) -> bool:
+        """True where a request asks for something."""
+        request = self.job.request(request_id)
+        return bool(request.outlets) or request.swap is not None
+
+    def adopt(
+        self, job: Job, request_id: str, circuit_id: str, reading: CircuitReading, ways: tuple[WayAnswer, ...]
+    ) -> bool:
+        """Take over answers that were worked out elsewhere. False, and nothing kept, when the job moved on."""
+        if job is not self.job:
+            return False
+        self._memo[("reading", circuit_id, "as_found")] = reading
+        self._memo[("ways", request_id)] = ways
+        return True
+
     def answer(self, request_id: str) -> WayAnswer | None:
         """The answer for the way that was chosen, else for the best one; None where nothing is asked for."""
         request = self.job.request(request_id)
@@ -613,20 +632,6 @@ class Visit:
         from fieldtool.safety.next_step import strip
 
         return strip(self.job, circuit_id, self.clock())
-
-    def next_step(self, circuit_id: str | None) -> NextStep:
-        """The one next safe step. Uses what was already judged; it never makes the strip wait for a network."""
-        from fieldtool.safety.next_step import next_step
-
-        request_id = self.request_of(circuit_id) if circuit_id is not None else None
-        answers = self._memo.get(("ways", request_id))
-        verdict = None
-        if answers and request_id is not None:
-            verdict = self.verdict(request_id)
-        elif circuit_id is not None:
-            verdict = self._memo.get(("existing", circuit_id))
-        reading = self._memo.get(("reading", circuit_id, "as_found"))
-        return next_step(self.job, circuit_id, self.clock(), verdict=verdict, reading=reading, request_id=request_id)
 
     def next_change(self) -> datetime | None:
         """When the strip changes by itself: a warning or a lapse."""
@@ -715,32 +720,55 @@ class Visit:
         )
         return self._apply([Put("parted", row)], why=sort)
 
+    def part_all(self, circuit_id: str, things: Sequence[tuple[str, str]], place: str = "board") -> str:
+        """Log several conductors parted together, as one entry: they were parted in one go."""
+        from fieldtool.job.isolation import Parted
+        from fieldtool.safety.parting import may_part, outstanding
+
+        known = {row.what for row in outstanding(self.job, circuit_id)}
+        changes: list[Change] = []
+        for what, conductor in things:
+            if what in known:
+                continue
+            refused = may_part(self.job, circuit_id, what, "parted", self.clock())
+            if refused:
+                return refused
+            self.job, (row_id,) = new_ids(self.job, ["x"])
+            changes.append(
+                Put(
+                    "parted",
+                    Parted(
+                        id=row_id,
+                        circuit=circuit_id,
+                        what=what,
+                        sort="parted",
+                        conductor=conductor,
+                        place=place,
+                        at=self.clock(),
+                    ),
+                )
+            )
+        return self._apply(changes, why="parted")
+
+    def metres_left(self, circuit_id: str) -> dict[str, str]:
+        """How far an unfused spur (or, on a radial, a branch) could reach from each point [m], as the map shows it."""
+        from fieldtool.verdict.reach import reach
+
+        found = reach(self.job, circuit_id, self.circuit_reading(circuit_id))
+        return {point: "--" if metres is None else f"{metres:g}" for point, metres in found.items()}
+
+    def leg_shares(self, circuit_id: str) -> dict[str, str]:
+        """What the heavier leg carries of 20 A taken at each point of a ring [A]; empty where it is no ring."""
+        from fieldtool.verdict.reach import heavier_leg
+
+        return {point: f"{amps:.1f}" for point, amps in heavier_leg(self.job, circuit_id).items()}
+
     def put_back(self, parted_id: str) -> str:
         """Say that something parted is back in its terminals, or that something joined is off and proved open."""
         row = next((item for item in self.job.parted if item.id == parted_id), None)
         if row is None or row.back_at is not None:
             return "That is not parted or joined."
         return self._apply([Put("parted", row.model_copy(update={"back_at": self.clock()}))], why="put back")
-
-    # finding one's way --------------------------------------------------------------------------------------
-    def step_counts(self, circuit_id: str | None) -> tuple[str, str, str, str]:
-        """What each step says of itself: ``ok``, ``3 to go``, ``--`` or a verdict's mark."""
-        if circuit_id is None:
-            return ("--", "--", "--", "--")
-        from fieldtool.answers import MARKS
-
-        verdict = self.judged(circuit_id)
-        survey = sum(gap.test == "survey" for gap in verdict.missing)
-        readings = len(verdict.missing) - survey
-        asked = [request for request in self.job.requests if request.circuit == circuit_id and request.outlets]
-        request_id = self.request_of(circuit_id)
-        answer = self.answer(request_id) if request_id is not None else None
-        return (
-            f"{survey} to go" if survey else "ok",
-            f"{readings} to go" if readings else "ok",
-            f"{len(asked)} asked" if asked else "--",
-            MARKS[answer.outcome].upper() if answer is not None else "--",
-        )
 
 
 def warm() -> None:

@@ -1,0 +1,1 @@
+"""Sheets: what lies over a pane for a moment, under the strip."""

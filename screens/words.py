@@ -1,0 +1,55 @@
+"""Words that several panes use."""
+
+from __future__ import annotations
+
+from typing import Any, get_args
+
+from pydantic.fields import FieldInfo
+
+from fieldtool.job.kinds import words
+
+__all__ = ["POINT_MARK", "choice_words", "members_of", "show_value"]
+
+POINT_MARK = {"twin": "(2)", "single": "(1)", "fcu": "(F)", "appliance": "(A)", "joint": "(J)", "blank": "( )"}
+"""How each kind of point is drawn, on the rail and on the map."""
+
+_WORDS = {
+    "all_poles": "all poles",
+    "line_only": "line only",
+    "not_needed": "none needed",
+    "not_seen": "not seen",
+    "off_zone": "off the zones",
+    "in_zone": "in a safe zone",
+    "deep": "over 50 mm deep",
+    "mixed_colours": "old and new colours",
+}
+
+
+def choice_words(member: object) -> str:
+    """A member of a closed list as it is offered."""
+    text = str(int(member)) if isinstance(member, float) and member.is_integer() else str(member)
+    return _WORDS.get(text, words(text))
+
+
+def members_of(info: FieldInfo) -> tuple[object, ...]:
+    """The members of a field's closed list; empty where it is not one."""
+    return tuple(_literals(info.annotation))
+
+
+def _literals(annotation: Any) -> list[object]:
+    found: list[object] = []
+    for part in get_args(annotation):
+        if isinstance(part, str | int) and not isinstance(part, bool):
+            found.append(part)
+        elif part is not type(None):
+            found.extend(_literals(part))
+    return found
+
+
+def show_value(value: object) -> str:
+    """A survey value as a row shows it."""
+    if value is None or value == "":
+        return ""
+    if isinstance(value, float):
+        return f"{value:g}"
+    return choice_words(value) if isinstance(value, str) else str(value)
