@@ -159,7 +159,9 @@ class Pane(Widget, can_focus=False):
         for number, line in enumerate(self._drawn):
             if number:
                 out.append("\n")
-            out.append_text(line.text)
+            text = line.text.copy()
+            text.truncate(max(1, self.size.width), overflow="ellipsis")
+            out.append_text(text)
         return out
 
     @staticmethod

@@ -28,7 +28,7 @@ def counts(bench: Workbench) -> dict[str, str]:
     waiting = sum(1 for reading in visit.waiting_taken(circuit))
     out["readings"] = f"{waiting} ask" if waiting else (f"{empty} to go" if empty else "ok")
     asked = [request for request in visit.job.requests if request.circuit == circuit]
-    out["proposal"] = f"{len(asked)} asked" if asked else "--"
+    out["proposal"] = str(len(asked)) if asked else "--"
     verdict = bench.verdict()
     out["verdict"] = MARKS[verdict.outcome].upper() if verdict is not None and asked else "??"
     return out

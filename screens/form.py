@@ -68,7 +68,7 @@ def fields_of(
                 quantity,
                 tuple((choice_words(member), member) for member in members),
                 str(extra.get("help") or ""),
-                needed=info.default is None,
+                needed=info.default is None and not extra.get("optional"),
             )
         )
     return rows

@@ -99,7 +99,7 @@ class VerdictPane(Pane):
         request = visit.job.request(request_id)
         where = plain(visit.job.point_name(request.at or request.swap))
         metres = sum(outlet.metres for outlet in request.outlets)
-        return f"{answer.words if answer else ''}, from {where}, {metres:g} m" if answer else ""
+        return f"{answer.words}: {where}, {metres:g} m" if answer else ""
 
     def _finding(self, number: int, finding: Finding) -> list[Line]:
         palette, here = self.palette, number == self.cursor

@@ -467,14 +467,14 @@ class Workbench(Screen[None]):
         counts = self.field.counts(self)
         for digit, key, word in (
             ("F2", "survey", "Board"), ("F3", "readings", "Readings"), ("F4", "proposal", "Proposal"),
-            ("F5", "verdict", "Verdict"), ("Esc 0", "shelf", "Jobs"),
+            ("F5", "verdict", "Verdict"), ("", "shelf", "Jobs"),
         ):  # fmt: skip
-            text = f"{digit} {word}{' ' + counts[key] if counts.get(key) else ''}"
+            text = f"{digit} {word}{' ' + counts[key] if counts.get(key) else ''}".strip()
             if key == base:
                 out.append(f"[{text}]", style=f"bold {palette.cur[0]} on {palette.cur[1]}")
-                out.append(" ")
             else:
-                out.append(f" {text}  ", style=palette.text)
+                out.append(f" {text} ", style=palette.text)
+            out.append(" ")
         return out
 
     def on_resize(self) -> None:

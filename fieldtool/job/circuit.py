@@ -19,7 +19,9 @@ class Install(Part):
     grouped_n: int = ask("circuits bunched together", quantity="count", default=1, ge=1, le=20)
     grouping: Literal["bunched", "single_layer", "tray", "ladder"] = ask("bunched how", default="bunched")
     insulated_mm: float = ask("length inside insulation", quantity="depth_mm", default=0.0, ge=0, le=5000)
-    legs_together: YesNo | None = ask("ring legs side by side", help="Then the two legs are a group of two.")
+    legs_together: YesNo | None = ask(
+        "ring legs side by side", help="Then the two legs are a group of two.", optional=True
+    )
 
 
 class Circuit(Row):
@@ -38,19 +40,19 @@ class Circuit(Row):
     line_ends: int | None = ask("line conductors at the way", quantity="count", ge=0, le=12)
     neutral_ends: int | None = ask("neutrals of it at the bar", quantity="count", ge=0, le=12)
     cpc_ends: int | None = ask("earths of it at the bar", quantity="count", ge=0, le=12)
-    terminal_room: YesNo | None = ask("room in the way's terminals")
+    terminal_room: YesNo | None = ask("room in the way's terminals", optional=True)
     heat_seen: YesNo | None = ask("heat, smell or browning anywhere", help="Ask the occupier too.")
     back_feed: Literal["none", "found", "unknown"] | None = ask(
         "anything that feeds back into it", help="Plug-in solar, inverter, UPS, a lead with two plugs."
     )
     other_circuits_in_boxes: YesNo | None = ask("another circuit in any of its boxes")
-    it_items: int | None = ask("items of IT equipment on it", quantity="count", ge=0, le=500)
+    it_items: int | None = ask("items of IT equipment on it", quantity="count", ge=0, le=500, optional=True)
     load_has_dc: RcdType | None = ask(
         "RCD type the loads need", help="Most modern loads need A; heat pumps, vehicles B or F."
     )
-    floor_area_m2: float | None = ask("floor area it serves", quantity="floor_m2", ge=0, le=2000)
+    floor_area_m2: float | None = ask("floor area it serves", quantity="floor_m2", ge=0, le=2000, optional=True)
     left_in_for_ir: Text = ask("left connected for IR", default="")
-    arc_fault_device: YesNo | None = ask("arc fault detection fitted")
+    arc_fault_device: YesNo | None = ask("arc fault detection fitted", optional=True)
 
 
 class Point(Row):
@@ -63,16 +65,16 @@ class Point(Row):
     circuit: Id
     kind: PointKind = ask("kind", default="twin")
     name: Text = ask("name", default="")
-    walk_order: int | None = ask("place in the walk", quantity="count", ge=1, le=500)
+    walk_order: int | None = ask("place in the walk", quantity="count", ge=1, le=500, optional=True)
     spur_from: Id | None = None
-    spur_length_m: float | None = ask("spur length", quantity="length_m", ge=0, le=500)
+    spur_length_m: float | None = ask("spur length", quantity="length_m", ge=0, le=500, optional=True)
     behind: Id | None = None
-    fuse_a: float | None = ask("plug fuse in it", quantity="rating_a", gt=0, le=13)
-    cables: int | None = ask("cables in the box", quantity="count", ge=0, le=12)
-    box_depth_mm: float | None = ask("box depth", quantity="depth_mm", gt=0, le=200)
-    condition: Condition | None = ask("by eye")
-    accessible: YesNo | None = ask("can be reached")
-    rated_a: float | None = ask("rated", quantity="rating_a", gt=0, le=100)
+    fuse_a: float | None = ask("plug fuse in it", quantity="rating_a", gt=0, le=13, optional=True)
+    cables: int | None = ask("cables in the box", quantity="count", ge=0, le=12, optional=True)
+    box_depth_mm: float | None = ask("box depth", quantity="depth_mm", gt=0, le=200, optional=True)
+    condition: Condition | None = ask("by eye", optional=True)
+    accessible: YesNo | None = ask("can be reached", optional=True)
+    rated_a: float | None = ask("rated", quantity="rating_a", gt=0, le=100, optional=True)
 
 
 class Run(Row):

@@ -154,7 +154,7 @@ TESTS: dict[TestKey, TestSpec] = {
     spec.key: spec
     for spec in (
         TestSpec("ze", "Ze at the origin", "Ze", "loop_ohm", "board", "origin"),
-        TestSpec("pfc", "prospective fault current", "PFC", "fault_a", "board", "origin"),
+        TestSpec("pfc", "prospective fault current", "PFC kA", "fault_a", "board", "origin"),
         TestSpec("ra", "earth electrode resistance", "RA", "electrode_ohm", "board", "origin"),
         TestSpec("zdb", "loop at this board", "Zdb", "loop_ohm", "board", "live"),
         TestSpec("legs", "legs proved by measurement", "legs", None, "circuit", "dead"),

@@ -66,7 +66,7 @@ class Instrument(Row):
     gain_percent: float = ask("accuracy, % of reading", quantity="percent", default=2.0, ge=0, le=50)
     digits: float = ask("accuracy, digits", quantity="count", default=2.0, ge=0, le=50)
     no_trip_ohm: float = ask("no-trip loop error", quantity="loop_ohm", default=0.3, ge=0, le=5)
-    lead_null_ohm: float | None = ask("lead resistance nulled", quantity="low_ohm", ge=0, le=5)
+    lead_null_ohm: float | None = ask("lead resistance nulled", quantity="low_ohm", ge=0, le=5, optional=True)
     low_ohm_checked_at: Moment | None = None
 
 
@@ -97,11 +97,11 @@ class Supply(Row):
     cutout_condition: Condition | None = ask(
         "cut-out by eye", help="Hot, cracked, leaking: stop, call the distributor."
     )
-    main_fuse_a: float | None = ask("main fuse", quantity="rating_a", gt=0, le=800)
-    looped: YesNo | None = ask("looped to a neighbour", help="Two houses on one cut-out limit the load.")
-    max_demand_a: float | None = ask("maximum demand", quantity="load_a", ge=0, le=2000)
-    tails_mm2: float | None = ask("meter tails", quantity="area_mm2", gt=0, le=300)
-    supply_neutral_mm2: float | None = ask("supply neutral", quantity="area_mm2", gt=0, le=300)
+    main_fuse_a: float | None = ask("main fuse", quantity="rating_a", gt=0, le=800, optional=True)
+    looped: YesNo | None = ask("looped to a neighbour", help="Two houses on one cut-out limit the load.", optional=True)
+    max_demand_a: float | None = ask("maximum demand", quantity="load_a", ge=0, le=2000, optional=True)
+    tails_mm2: float | None = ask("meter tails", quantity="area_mm2", gt=0, le=300, optional=True)
+    supply_neutral_mm2: float | None = ask("supply neutral", quantity="area_mm2", gt=0, le=300, optional=True)
     earthing_conductor: Literal["sound", "absent", "damaged"] | None = ask("earthing conductor")
     earthing_conductor_mm2: float | None = ask("earthing conductor size", quantity="area_mm2", gt=0, le=300)
     bonding: Literal["seen", "not_needed", "not_seen"] | None = ask(
@@ -146,8 +146,8 @@ class Board(Row):
     maker_note: Text = ask("maker and model as marked", default="")
     fed_from: Text = ask("fed from", default="")
     main_switch: Literal["all_poles", "line_only", "none"] | None = ask("main switch cuts")
-    lockable: YesNo | None = ask("can be locked off")
-    conditional_rating_ka: float | None = ask("conditional rating", quantity="breaking_ka", gt=0, le=100)
-    spare_ways: int | None = ask("spare ways", quantity="count", ge=0, le=96)
+    lockable: YesNo | None = ask("can be locked off", optional=True)
+    conditional_rating_ka: float | None = ask("conditional rating", quantity="breaking_ka", gt=0, le=100, optional=True)
+    spare_ways: int | None = ask("spare ways", quantity="count", ge=0, le=96, optional=True)
     condition: Condition | None = ask("board by eye", help="Signs of heat stop the job until explained.")
-    mixed_makes: YesNo | None = ask("devices of other makers fitted")
+    mixed_makes: YesNo | None = ask("devices of other makers fitted", optional=True)

@@ -38,10 +38,12 @@ class NewOutlet(Part):
     kind: PointKind = ask("what is added", default="twin")
     name: Text = ask("name", default="new outlet")
     metres: float = ask("metres of cable to it", quantity="length_m", default=0.0, ge=0, le=1000)
-    load_a: float | None = ask("load", quantity="load_a", ge=0, le=100)
+    load_a: float | None = ask("load", quantity="load_a", ge=0, le=100, optional=True)
     lasting: bool = True
     where: Literal["indoors", "kitchen", "outdoors", "bathroom", "outbuilding"] | None = ask("place")
-    zone_distance_m: float | None = ask("metres from bath or shower zone 1", quantity="length_m", ge=0, le=100)
+    zone_distance_m: float | None = ask(
+        "metres from bath or shower zone 1", quantity="length_m", ge=0, le=100, optional=True
+    )
     load_has_dc: RcdType | None = ask("RCD type its load needs")
     heating_or_cooking: YesNo | None = ask("heating, immersion, cooking or vehicle charging")
 
@@ -81,11 +83,11 @@ class Request(Row):
     at: Id | None = None
     other: Id | None = None
     outlets: tuple[NewOutlet, ...] = ()
-    back_metres: float | None = ask("metres back to the ring", quantity="length_m", ge=0, le=1000)
+    back_metres: float | None = ask("metres back to the ring", quantity="length_m", ge=0, le=1000, optional=True)
     route: Route = Route()
     swap: Id | None = None
     moved_to_m: float | None = None
-    fuse_a: float | None = ask("fuse in the unit", quantity="rating_a", gt=0, le=13)
+    fuse_a: float | None = ask("fuse in the unit", quantity="rating_a", gt=0, le=13, optional=True)
     cures: tuple[Cure, ...] = ()
     chosen_way: WayKey | None = None
     choices: tuple[Choice, ...] = ()

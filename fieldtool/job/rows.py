@@ -49,10 +49,19 @@ class Row(BaseModel):
     note: LongText = ""
 
 
-def ask(label: str, *, quantity: str | None = None, help: str = "", default: Any = None, **rules: Any) -> Any:
+def ask(
+    label: str,
+    *,
+    quantity: str | None = None,
+    help: str = "",
+    default: Any = None,
+    optional: bool = False,
+    **rules: Any,
+) -> Any:
     """A survey field: its label, the quantity it is entered as, and what to look for.
 
-    The survey's forms are made from this, so a new field needs no other place. ``rules`` are pydantic's own.
+    The survey's forms are made from this, so a new field needs no other place. ``optional`` marks one that most
+    jobs do without; ``rules`` are pydantic's own.
     """
-    extra: dict[str, JsonValue] = {"ask": label, "quantity": quantity, "help": help}
+    extra: dict[str, JsonValue] = {"ask": label, "quantity": quantity, "help": help, "optional": optional}
     return Field(default, json_schema_extra=extra, **rules)

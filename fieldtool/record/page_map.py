@@ -111,7 +111,7 @@ def draw(
     end = start + (half - 1) * pitch + 3
     paper.put(0, 0, "A------" if ring else "-------")
     if ring:
-        edge = min(width - 1, end + 3)
+        edge = min(width - 1, start + (half - 1) * pitch + max(pitch - 1, 5))
         paper.put(0, end, "-" * (edge - end) + "7")
         for row in (1, 2, 3):
             paper.put(row, edge, "|")

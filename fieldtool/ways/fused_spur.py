@@ -34,7 +34,7 @@ def _fused(setting: Setting, fuse_a: float, work: int, *, fcu: int, conditions: 
     )
 
 
-@way("fused_spur", "fused spur from the point", 2)
+@way("fused_spur", "fused spur", 2)
 def apply(setting: Setting) -> Edit | Refusal:
     """A fused connection unit beside the named point, and any number of outlets beyond it."""
     refusal = need_outlets(setting) or need_point(setting)

@@ -7,7 +7,7 @@ from fieldtool.ways.places import need_outlets, need_point, need_ring, sizes_at
 from fieldtool.ways.way import Edit, Refusal, Setting, chain_of, way
 
 
-@way("spur_at_point", "unfused spur from the point", 1)
+@way("spur_at_point", "unfused spur", 1)
 def apply(setting: Setting) -> Edit | Refusal:
     """Hang the new outlets on the named point of the ring."""
     refusal = need_ring(setting) or need_outlets(setting) or need_point(setting)

@@ -128,7 +128,8 @@ class EntryLine(Widget, can_focus=True):
         target, palette = self.target, self.bench.palette
         width = max(20, self.size.width)
         out = Text(no_wrap=True, overflow="crop", end="")
-        label = shorten(plain(target.label), max(12, width // 2 - 12))
+        room = max(12, width // 2 - 12) if target.kind != "none" else width - 4
+        label = shorten(plain(target.label), room)
         out.append(f" {label}  ", style=palette.text)
         shown = plain(self.typed)
         if target.kind != "none" or self.typed:
@@ -151,4 +152,5 @@ class EntryLine(Widget, can_focus=True):
             room = width - out.cell_len - 1
             if room > len(tail):
                 out.append(" " * (room - len(tail)) + tail, style=palette.muted)
+        out.truncate(width, overflow="ellipsis")
         return out

@@ -1,0 +1,70 @@
+"""``fieldtool history``: who entered what when, and what it replaced."""
+
+from __future__ import annotations
+
+import json
+from pathlib import Path
+from typing import Any, TextIO
+
+from fieldtool.commands.arguments import Parser, Usage
+from fieldtool.job.job import HistoryEntry, Job
+from fieldtool.jobfile.opening import read_job
+from fieldtool.jobfile.problems import JobFileProblem
+from fieldtool.quantities.show import plain, shorten
+
+__all__ = ["run"]
+
+EXAMPLE = "example: fieldtool history kitchen.json"
+
+
+def run(args: list[str], out: TextIO, err: TextIO) -> int:
+    """Print a job's history, oldest first; returns the exit code: 0 printed, 2 the file is not usable."""
+    parser = Parser("history", "Print who entered what when, and what it replaced.", EXAMPLE)
+    parser.add_argument("file", help="the job file")
+    parser.add_argument("--json", action="store_true", help="print JSON")
+    try:
+        given = parser.parse_args(args)
+        job = read_job(Path(given.file))
+    except Usage as problem:
+        err.write(f"fieldtool history: {problem}\n")
+        return 2
+    except JobFileProblem as problem:
+        err.write(f"fieldtool history: {problem.sentence}\n")
+        return 2
+    if given.json:
+        out.write(
+            json.dumps([entry.model_dump(mode="json") for entry in job.history], ensure_ascii=False, indent=1) + "\n"
+        )
+        return 0
+    if not job.history:
+        out.write("Nothing was entered through the tool yet: the file was written by hand.\n")
+    for entry in job.history:
+        out.write(_line(job, entry) + "\n")
+    return 0
+
+
+def _line(job: Job, entry: HistoryEntry) -> str:
+    when = f"{entry.at.astimezone():%Y-%m-%d %H:%M:%S}"
+    who = next((person.name for person in job.people if person.id == entry.by), entry.by or "-")
+    why = f" ({entry.why})" if entry.why else ""
+    return plain(f"{entry.n:>4}  {when}  {who}  {entry.what}{why}: {_said(entry)}")
+
+
+def _said(entry: HistoryEntry) -> str:
+    was: dict[str, Any] = json.loads(entry.was) if entry.was else {}
+    now: dict[str, Any] = json.loads(entry.now) if entry.now else {}
+    if not now:
+        return "taken out"
+    if not was:
+        kept = {
+            key: value for key, value in now.items() if value not in (None, "", [], False) and key not in ("id", "at")
+        }
+        return shorten(", ".join(f"{key} {_value(value)}" for key, value in kept.items()), 160)
+    changed = [key for key in now if was.get(key) != now[key]]
+    return shorten(", ".join(f"{key} was {_value(was.get(key))}, now {_value(now[key])}" for key in changed), 160)
+
+
+def _value(value: Any) -> str:
+    if isinstance(value, dict | list):
+        return json.dumps(value, ensure_ascii=False)
+    return "not known" if value is None or value == "" else str(value)
