@@ -233,7 +233,8 @@ def redo_changes(job: Job, *, at: datetime, by: str = "") -> Job | None:
     return _take_back(job, undone[-1], at=at, by=by, why="redo") if undone else None
 
 
-def _take_back(job: Job, number: int, *, at: datetime, by: str, why: str) -> Job:
+def _take_back(job: Job, number: int, *, at: datetime, by: str, why: str) -> Job | None:
+    """The job with one group of changes taken back; None where later entries still stand on what it made."""
     group = next(group for group in _groups(job) if (group[0].group or group[0].n) == number)
     changes: list[Change] = []
     for entry in reversed(group):
@@ -245,7 +246,10 @@ def _take_back(job: Job, number: int, *, at: datetime, by: str, why: str) -> Job
             changes.append(Remove(cast(TableName, table), row_id))
         else:
             changes.append(Put(*_row_from(entry.what, entry.was)))
-    return _commit(job, tuple(changes), at=at, by=by, why=why, undoes=number)
+    try:
+        return _commit(job, tuple(changes), at=at, by=by, why=why, undoes=number)
+    except ChangeProblem:
+        return None
 
 
 def _withdrawal(job: Job, entry: HistoryEntry, at: datetime) -> tuple[Job, Change]:

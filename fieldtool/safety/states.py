@@ -280,7 +280,9 @@ def _lapse_parted(job: Job, circuit_id: str, fold: _Fold) -> None:
         if proved is not None and row.at > proved:
             fold.proved.pop(row.place)
             for step in _PROOF:
-                fold.done.pop(step, None)
+                done = fold.done.get(step)
+                if done is not None and done.at <= row.at:
+                    fold.done.pop(step)
             fold.reason = f"The {row.conductor.replace('cpc', 'earth')} was parted since: prove it dead again."
 
 

@@ -165,7 +165,7 @@ def test_one_point_and_two_hundred_points_are_solved() -> None:
 
 
 def test_bad_runs_and_places_have_their_own_errors() -> None:
-    with pytest.raises(BadRun, match="below|0 or more"):
+    with pytest.raises(BadRun, match="0 or more"):
         solve(Layout("c", ("p1",), (LayoutRun("a", BOARD, "p1", Ohms(-1.0, 1.0, 1.0)),)))
     with pytest.raises(BadRun):
         solve(Layout("c", ("p1",), (LayoutRun("a", BOARD, "p1", Ohms(float("nan"), 1.0, 1.0)),)))
