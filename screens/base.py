@@ -147,13 +147,16 @@ class Pane(Widget, can_focus=False):
         every = self.lines()
         height = max(1, self.size.height)
         here = next((n for n, line in enumerate(every) if self._holds(line, self.cursor)), 0)
-        if here < self.top:
+        wanted = self.wanted_top(every)
+        if wanted is not None and here - wanted < height:
+            self.top = wanted
+        elif here < self.top:
             self.top = max(0, here - 1)
         elif here >= self.top + height:
             self.top = here - height + 1
         self.top = max(0, min(self.top, max(0, len(every) - height)))
-        if here < height and self.top <= 2 and here - 0 < height:
-            self.top = 0 if here < height else self.top
+        if wanted is None and here < height and self.top <= 2:
+            self.top = 0
         self._drawn = every[self.top : self.top + height]
         out = Text(no_wrap=True, overflow="crop", end="")
         for number, line in enumerate(self._drawn):
@@ -163,6 +166,11 @@ class Pane(Widget, can_focus=False):
             text.truncate(max(1, self.size.width), overflow="ellipsis")
             out.append_text(text)
         return out
+
+    def wanted_top(self, every: list[Line]) -> int | None:
+        """The line that should stand first, where a pane knows better than the cursor; None where it does not."""
+        del every
+        return None
 
     @staticmethod
     def _holds(line: Line, index: int) -> bool:

@@ -233,6 +233,13 @@ class Proposal(Form):
                 out.extend(self._detail(answer, base + number))
         return out
 
+    def wanted_top(self, every: list[Line]) -> int | None:
+        """With the cursor among the ways, the ways begin the pane."""
+        base = len(self.rows())
+        if self.cursor < base:
+            return None
+        return next((n - 1 for n, line in enumerate(every) if line.index == base), None)
+
     def _way(self, number: int, answer: WayAnswer, index: int, request: Request | None) -> Line:
         palette = self.palette
         here = index == self.cursor

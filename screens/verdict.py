@@ -143,7 +143,7 @@ class VerdictPane(Pane):
 
     def _bar(self, room: Headroom, finding: Finding) -> Text:
         unit = {"ohm": "Ω"}.get(room.unit, room.unit)
-        left = "--" if room.metres is None else f"{room.metres:g} m left, {room.metres_clear or 0:g} clear of the meter"
+        left = "--" if room.metres is None else f"{room.metres:g} m left, {room.metres_clear or 0:g} clear"
         label = f"  {room.limit_key.replace('_', ' '):<10} {finding.measured or 0:>6.2f} {unit} "
         drawn = bar((finding.measured or 0.0), finding.tol, finding.limit or 1.0, 24, self.bench.field.ascii)
         return Text(

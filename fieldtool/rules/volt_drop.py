@@ -162,7 +162,7 @@ def volt_drop(facts: Facts) -> Iterable[Finding]:
             "limit_key": "volt_drop",
             "assumed": (
                 *facts.found.assumed,
-                *(() if drop.entered else (f"{drop.load_a:g} A at {facts.name(place)}",)),
+                *(() if drop.entered else (f"{drop.load_a:g} A at the point that is judged",)),
             ),
         }
         says = f"Volt drop {shown:.1f} V at {facts.name(place)} on {kind} load, most {limit.value:.1f}."
