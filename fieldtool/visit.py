@@ -554,7 +554,8 @@ class Visit:
         answers = self.ways(request_id)
         if request.chosen_way is not None:
             return next((item for item in answers if item.way == request.chosen_way), None)
-        return answers[0] if answers and answers[0].applies else None
+        real = (item for item in answers if item.applies and item.way != "leave_it")
+        return next(real, answers[0] if answers else None)
 
     def verdict(self, request_id: str) -> Verdict | None:
         """The verdict of the chosen way, else of the best one."""

@@ -36,6 +36,8 @@ SHEETS = {
     "points": "Points",
     "circuits": "Circuits",
     "leave": "Leave",
+    "folder": "Folder",
+    "recovered": "Recovered",
 }
 
 

@@ -155,6 +155,8 @@ class Shelf(Pane):
         self.bench.show_pane("readings" if visit.job.circuits else "survey")
         if visit.notes:
             self.bench.say(shorten(visit.notes[0], 74))
+        if visit.file.differences:
+            self.bench.open_named("recovered")
 
     def notes(self) -> tuple[str, str]:
         """How many there are, and what to do."""

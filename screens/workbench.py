@@ -284,7 +284,7 @@ class Workbench(Screen[None]):
         elif meaning == "menu":
             self.open_menu()
         elif meaning == "f6":
-            self.front.do_f6()
+            self.do_f6()
         elif meaning in ("skip", "back", "missing"):
             self.special({"skip": "+", "back": "-", "missing": "/"}[meaning])
         elif meaning == "OL":
@@ -319,7 +319,7 @@ class Workbench(Screen[None]):
             "f3": lambda: self.show_pane("readings"),
             "f4": lambda: self.show_pane("proposal"),
             "f5": lambda: self.show_pane("verdict"),
-            "f6": lambda: self.front.do_f6(),
+            "f6": self.do_f6,
             "f7": lambda: self.open_named("map"),
             "f8": self.toggle_pad,
             "f9": lambda: self.open_named("isolation"),
@@ -336,6 +336,13 @@ class Workbench(Screen[None]):
                 return
             moves[event.key]()
             self.entry.focus()
+
+    def do_f6(self) -> None:
+        """What row 24 offers; while nothing can be saved, another folder comes first."""
+        if self.visit is not None and self.visit.save_problem and self.front.key != "folder":
+            self.open_named("folder")
+        else:
+            self.front.do_f6()
 
     def escape(self) -> None:
         """Close the sheet; with none open, the menu."""

@@ -110,6 +110,8 @@ def both_poles_needed(job: Job, circuit_id: str) -> str:
         return "TT: a single pole off leaves the neutral connected. Both poles go off."
     if job.supply.system is None and poles != 2:
         return "The earthing system is not known: both poles go off."
+    if any(row.circuit == circuit_id and row.place == "board" and row.back_at is None for row in job.parted):
+        return "Conductors are parted or joined at the board: the whole board goes off."
     if circuit.label_claims == "ring" and circuit.line_ends == 1:
         return "One line end at the way: the other leg may sit in another way. The whole board goes off."
     ends = {circuit.line_ends, circuit.neutral_ends, circuit.cpc_ends} - {None}

@@ -119,6 +119,13 @@ def test_ring_106_m_and_radials_43_and_33_m() -> None:
     assert twenty_m == pytest.approx(33, abs=1.5)
 
 
+def test_43_m_of_2_5_and_its_nominal_ratio() -> None:
+    """Continuity of ring conductors, stage one: r1 0.3, r2 0.5; the page rounds loosely, 10 %."""
+    r1 = r_ohm_per_m(2.5).value * 43
+    assert r1 == pytest.approx(0.3, rel=0.1)
+    assert r1 * r_ohm_per_m(1.5).value / r_ohm_per_m(2.5).value == pytest.approx(0.5, rel=0.1)
+
+
 def test_temperature_steps() -> None:
     """Zs values?, p 2 (forum): 20 to 70 °C is 20 %; IET forum: 10 to 70 °C is 1.25."""
     rate = constant("copper.per_degree").value

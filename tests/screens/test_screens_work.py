@@ -206,6 +206,32 @@ async def test_a_lapse_while_a_sheet_is_open_repaints_and_keeps_what_is_half_typ
         assert bench.entry.typed == "0.2"
 
 
+async def test_a_full_card_is_said_and_the_job_goes_on_in_another_folder(tmp_path: Path) -> None:
+    app = empty_ring(tmp_path, 3, Clock())
+    async with app.run_test(size=(80, 24)) as pilot:
+        await settled(pilot, app)
+        bench = app.bench
+        assert bench is not None
+        visit = bench.visit
+        assert visit is not None
+
+        def full(*_: object) -> None:
+            raise OSError(28, "no space left")
+
+        visit.file._files.write_new = full  # type: ignore[method-assign]
+        typed(app, "0.18\n")
+        await pilot.pause(0.2)
+        assert "full" in visit.save_problem
+        assert [row.value for row in visit.job.standing()] == [0.18]
+        del visit.file._files.write_new
+        bench.do_f6()
+        await pilot.pause(0.1)
+        assert bench.front.key == "folder" or not visit.save_problem
+        assert visit.move_to(tmp_path / "card") == ""
+        assert (tmp_path / "card" / "ring.json").exists()
+    assert [row.value for row in Visit.open(tmp_path / "card" / "ring.json", want_write=False).job.standing()] == [0.18]
+
+
 async def test_a_screen_without_the_strip_is_refused(tmp_path: Path) -> None:
     app = app_on(tmp_path)
     async with app.run_test(size=(80, 24)):
