@@ -270,7 +270,28 @@ class VerdictPane(Pane):
         if verdict is not None and verdict.missing:
             names = ", ".join(gap.words for gap in verdict.missing[:4])
             first = f"??  missing, in this order: {shorten(names, 66)}"
-        return (first, "1 work begins   2 work is done   3 give it up   7 keep this verdict")
+        return (first, self._to_finish() or "1 work begins   2 work is done   3 give it up   7 keep this verdict")
+
+    def _to_finish(self) -> str:
+        """What keeps the job from being finished, once the work is said to be done; empty before that."""
+        visit, circuit = self.bench.visit, self.bench.circuit
+        request_id = visit.request_of(circuit) if visit is not None and circuit is not None else None
+        if visit is None or circuit is None or request_id is None:
+            return ""
+        request = visit.job.request(request_id)
+        if request.work_done_at is None and request.abandoned_at is None:
+            return ""
+        from fieldtool.safety.next_step import finished
+        from fieldtool.verdict.predict import held_against
+
+        answer = visit.answer(request_id) if visit.has_ways(request_id) else None
+        predicted = answer.verdict.predicted if answer is not None and answer.verdict is not None else ()
+        outside = sum(held.agrees is False for held in held_against(visit.job, predicted, circuit))
+        reasons = finished(visit.job, request, answer.repeat_tests if answer is not None else (), outside)
+        if not reasons:
+            return "ok  Finished: everything is back, read and handed over."
+        more = f" (+{len(reasons) - 1} more)" if len(reasons) > 1 else ""
+        return f"??  not finished: {shorten(plain(reasons[0]), 52)}{more}"
 
     def hints(self) -> str:
         """The keys that matter here."""

@@ -232,6 +232,20 @@ async def test_a_full_card_is_said_and_the_job_goes_on_in_another_folder(tmp_pat
     assert [row.value for row in Visit.open(tmp_path / "card" / "ring.json", want_write=False).job.standing()] == [0.18]
 
 
+async def test_the_verdict_says_what_keeps_the_work_from_being_finished(tmp_path: Path) -> None:
+    app = app_on(tmp_path)
+    async with app.run_test(size=(80, 24)) as pilot:
+        await settled(pilot, app)
+        bench = app.bench
+        assert bench is not None
+        assert bench.visit is not None
+        done = bench.visit.job.requests[0].model_copy(update={"work_done_at": START})
+        assert bench.visit.put("requests", done) == ""
+        bench.show_pane("verdict")
+        await pilot.pause(0.8)
+        assert "not finished" in bench.front.notes()[1]
+
+
 async def test_a_screen_without_the_strip_is_refused(tmp_path: Path) -> None:
     app = app_on(tmp_path)
     async with app.run_test(size=(80, 24)):
