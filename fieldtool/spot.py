@@ -11,7 +11,7 @@ from dataclasses import dataclass, replace
 from datetime import datetime
 from typing import Any
 
-from fieldtool.answers import Verdict, WayAnswer
+from fieldtool.answers import Missing, Verdict, WayAnswer
 from fieldtool.job.circuit import Circuit, Install, Point
 from fieldtool.job.job import Job
 from fieldtool.job.place import Board, Bond, Device, OtherSource, Rcd, Site, Supply
@@ -374,16 +374,25 @@ def judge_spot(answers: Answers, now: datetime) -> tuple[WayAnswer, Job]:
     answer = judge(job, request, way, explain(job, "c1"))
     if answer.verdict is None:
         return answer, job
-    verdict = _named(answer.verdict)
+    verdict = _named(answer.verdict, answers)
     return replace(answer, verdict=verdict), job
 
 
-def _named(verdict: Verdict) -> Verdict:
+def _named(verdict: Verdict, answers: Answers) -> Verdict:
+    """The verdict with its assumptions named; anything asked and not known keeps it from being more than "not yet"."""
+    unknown = tuple(
+        Missing("survey", "board", question.words, number, f"spot.{question.key}")
+        for number, question in enumerate(asked(answers))
+        if answers.get(question.key, UNKNOWN) == UNKNOWN
+    )
     conditions = (*verdict.conditions, *(f"Prove: {line}." for line in _STOOD_FOR))
     outcome = "conditions" if verdict.outcome == "go" else verdict.outcome
+    if unknown and outcome == "conditions":
+        outcome = "more"
     return replace(
         verdict,
         outcome=outcome,
         conditions=tuple(dict.fromkeys(conditions)),
+        missing=(*verdict.missing, *unknown) if outcome == "more" else verdict.missing,
         assumed=tuple(dict.fromkeys((*verdict.assumed, *_STOOD_FOR))),
     )

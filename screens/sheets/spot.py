@@ -86,6 +86,11 @@ class SpotCheck(Sheet):
             Line(Text(f"  if  {plain(line)}", style=palette.text, no_wrap=True, overflow="ellipsis"))
             for line in verdict.conditions
         ]
+        for gap in verdict.missing:
+            text = Text("  ", no_wrap=True, overflow="crop")
+            text.append("??", style=palette.mark("??"))
+            text.append(f"  not known: {plain(gap.words)}", style=palette.text)
+            out.append(Line(text))
         for room in verdict.headroom:
             worst = max(
                 (f for f in verdict.findings if f.limit_key == room.limit_key and f.limit),
