@@ -282,7 +282,7 @@ class Facts:
         if dead is None and live_value is None:
             raise NotKnown(missing_test(self, "zs", place))
         if live is not None and live_value is not None:
-            lines.append(f"read there {live_value:.2f} Ω, {(live.mode or 'mode not given').replace('_', ' ')}")
+            lines.append(f"read there {_ohms(live_value, 2)}, {(live.mode or 'mode not given').replace('_', ' ')}")
         flattered = (
             dead is not None
             and live is not None
@@ -348,7 +348,8 @@ class Facts:
             metres += run.length_m or 0.0
             if run.b == place:
                 break
-        lines = (*foot.working, f"{foot.value:.3f} + {added:.3f} ({metres:.1f} m new) = {foot.value + added:.3f} Ω")
+        total = _ohms(foot.value + added)
+        lines = (*foot.working, f"{_ohms(foot.value)} + {added:.3f} ({metres:.1f} m new) = {total}")
         dead = None if foot.dead is None else foot.dead + added
         return Loop(
             place, foot.value + added, foot.tol, dead, foot.live, "calculated", foot.flattered, lines, foot.assumed
@@ -373,7 +374,7 @@ class Facts:
         tol = max(tol, board.tol + self.dead_tol(r))
         lines = [f"Z at board {board.value:.2f} + R1+R2 as edited {r:.3f} = {board.value + r:.3f} Ω"]
         if excess > 0:
-            lines.append(f"+ {excess:.3f} that the reading showed above the sum = {value:.3f} Ω")
+            lines.append(f"+ {_ohms(excess)} that the reading showed above the sum = {_ohms(value)}")
         return Loop(
             place,
             value,
@@ -385,6 +386,11 @@ class Facts:
             tuple(lines),
             tuple(dict.fromkeys(assumed)),
         )
+
+
+def _ohms(value: float, places: int = 3) -> str:
+    """A resistance as a working line shows it; a person reads "open", never an infinity."""
+    return f"{value:.{places}f} Ω" if isfinite(value) else "open"
 
 
 def _origin(reading: Reading) -> str:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
+from math import isfinite
 
 from fieldtool.answers import Finding, Missing
 from fieldtool.quantities.show import exceeds, round_limit_down
@@ -24,6 +25,8 @@ def _tt(facts: Facts) -> bool:
 
 
 def _says(facts: Facts, loop: Loop, limit: float) -> str:
+    if not isfinite(loop.value):
+        return f"Zs at {facts.name(loop.place)} is open: no earth there, or over range."
     sign = "" if loop.origin == "measured" else "="
     return f"Zs {sign}{loop.value:.2f} Ω at {facts.name(loop.place)}, most {round_limit_down(limit):.3f} (80 % in)."
 

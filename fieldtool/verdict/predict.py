@@ -58,6 +58,9 @@ def predict(facts: Facts) -> tuple[Prediction, ...]:
         except NotKnown:
             continue
         board = facts.loop_as_found(BOARD).value
+        if not isfinite(loop.value) or not isfinite(board):
+            # Nothing can be foretold beyond a loop that reads open: the rules stop it first.
+            continue
         out.append(_made(facts, "r1_r2", node, max(0.0, loop.value - board), loop.tol, "in_service"))
         out.append(_made(facts, "zs", node, loop.value, loop.tol, "in_service"))
     order = list(TESTS)
