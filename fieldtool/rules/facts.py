@@ -22,6 +22,7 @@ from fieldtool.job.request import NewOutlet, Request
 from fieldtool.network.as_found import AsFound, latest
 from fieldtool.network.grid import Grid, r1_r2, r1_rn, solve
 from fieldtool.network.layout import BOARD, Layout, LayoutRun
+from fieldtool.network.zones import zone_of
 from fieldtool.reference.look import DeviceType, device
 from fieldtool.rules.engine import NotKnown
 from fieldtool.rules.needs import missing_for, missing_test
@@ -162,16 +163,13 @@ class Facts:
         edit = self.edit
         if edit is not None and edit.fuse_a is not None and place in edit.new_nodes:
             return Protection(device(FCU_TYPE), edit.fuse_a, edit.attach[0] if edit.attach else BOARD, True)
-        behind = dict(self.layout.behind)
-        fuses = dict(self.layout.fuses)
-        node: str | None = place
-        if node in self.new_nodes and edit is not None and edit.attach:
-            node = edit.attach[0]
-            if node in fuses and edit.role != "ring":
-                return Protection(device(FCU_TYPE), fuses[node], node, True)
-        if node in behind:
-            parent = behind[node]
-            return Protection(device(FCU_TYPE), fuses.get(parent, 13.0), parent, True)
+        # New cable hangs in the zone of the place it is fed from: an existing fused unit's own fuse protects it only
+        # where a way starts on that unit's load side and says so by ``fuse_a``.
+        fed_from = edit.attach[0] if edit is not None and place in self.new_nodes and edit.attach else place
+        if fed_from in self.found.layout.nodes:
+            zone = zone_of(self.found.layout, fed_from)
+            if zone.fuse_a is not None:
+                return Protection(device(FCU_TYPE), zone.fuse_a, zone.head, True)
         return Protection(self.device_type, self.device.in_a, BOARD, False)
 
     # readings -----------------------------------------------------------------------------------------------
