@@ -320,7 +320,6 @@ class StateView:
     places: tuple[str, ...] = ()
     lapses_at: str = ""
     parted: tuple[str, ...] = ()
-    treat_as_live: bool = True
 
 
 def worst_first(findings: tuple[Finding, ...]) -> tuple[Finding, ...]:

@@ -90,11 +90,9 @@ class Visit:
         self.job: Job = file.job
         self.clock = clock
         self.by = by
-        self.revision = 0
         self.save_problem = ""
         self.saved_at: datetime | None = None
         self.notes: tuple[str, ...] = file.notes
-        self.last_change = ""
         self._memo: dict[tuple[Any, ...], Any] = {}
         self._last_log_tick: float | None = None
 
@@ -151,7 +149,6 @@ class Visit:
     # changing -----------------------------------------------------------------------------------------------
     def _swap(self, job: Job) -> None:
         self.job = job
-        self.revision += 1
         self._memo.clear()
 
     def _apply(self, changes: Sequence[Change], why: str = "") -> str:
@@ -197,10 +194,6 @@ class Visit:
     def put(self, table: str, row: Row, why: str = "") -> str:
         """Add a row, or put it in place of the one with its id. Empty, or one sentence saying what is wrong."""
         return self._apply([Put(table, row)], why)
-
-    def put_all(self, changes: Sequence[Change], why: str = "") -> str:
-        """Several changes as one entry: all are taken or none."""
-        return self._apply(changes, why)
 
     def remove(self, table: str, row_id: str, why: str = "") -> str:
         """Take a row out. Empty, or one sentence saying why not."""
@@ -272,6 +265,7 @@ class Visit:
         spec = TESTS[cast(TestKey, test)]
         values: dict[str, Any] = {}
         remark: EntryRemark | None = None
+        notice = ""
         if spec.field is None:
             answer = {"1": "right", "2": "wrong", "right": "right", "wrong": "wrong"}.get(raw.strip().lower())
             if answer is None:
@@ -282,6 +276,7 @@ class Visit:
             if isinstance(entry, EntryProblem):
                 return Entered(False, entry.sentence)
             values |= {"value": entry.value, "sign": entry.sign}
+            notice = entry.notice or ""
             remark = self.remark(cell, entry.value, entry.sign)
             if entry.unlikely and not (remark is not None and remark.doubt):
                 remark = EntryRemark(entry.unlikely, doubt=True)
@@ -312,7 +307,7 @@ class Visit:
         problem = self._apply([Put("readings", reading)], why="reading")
         if problem:
             return Entered(False, problem)
-        return Entered(True, remark.sentence if remark is not None else "", remark, reading)
+        return Entered(True, notice or (remark.sentence if remark is not None else ""), remark, reading)
 
     def remark(self, cell: Cell, value: float | None, sign: str) -> EntryRemark | None:
         """What is likely in a cell, and what is said of a value there."""

@@ -11,8 +11,9 @@ from fieldtool.job.kinds import WayKey
 from fieldtool.job.request import Choice, NewOutlet, Request
 from fieldtool.quantities.show import plain, shorten
 from fieldtool.reference.look import cable
-from screens.base import Line, Target
+from screens.base import Action, Line, Target
 from screens.form import FieldRow, Form, fields_of
+from screens.widgets.findings import counted, finding_text
 from screens.workbench import Workbench
 
 __all__ = ["Proposal"]
@@ -262,14 +263,8 @@ class Proposal(Form):
         out: list[Line] = []
         width = max(40, self.size.width - 8)
         if answer.verdict is not None:
-            for finding in answer.verdict.findings:
-                if finding.outcome in ("broken", "condition", "cannot_tell") and not finding.advice and len(out) < 4:
-                    text = Text("      ", no_wrap=True, overflow="crop")
-                    mark = MARKS[finding.outcome]
-                    text.append(mark, style=self.palette.mark(mark))
-                    text.append(f"  {shorten(plain(finding.says), width - 18)}", style=self.palette.text)
-                    text.append(f"  {finding.clause}", style=self.palette.muted)
-                    out.append(Line(text, index))
+            for finding in counted(answer.verdict.findings)[:4]:
+                out.append(Line(finding_text(finding, self.palette, self.size.width, lead="      "), index))
         material = ", ".join(f"{item.amount:g} {item.unit} {item.what}".replace("  ", " ") for item in answer.material)
         if material:
             out.append(Line(Text(f"      {shorten(material, width)}", style=self.palette.muted), index))
@@ -284,6 +279,16 @@ class Proposal(Form):
         if place < len(ways):
             return Target(f"{ways[place].words}: Enter chooses it", "none", lambda _: self._choose(ways[place]))
         return Target("")
+
+    def actions(self) -> tuple[Action, ...]:
+        """Among the ways a digit goes to its way; Enter then chooses it."""
+        base, ways = len(self.rows()), self.ways()
+        if self.cursor < base:
+            return ()
+        return tuple(
+            Action(str(n + 1), item.words, lambda n=n: self.choose(base + n))  # type: ignore[misc]
+            for n, item in enumerate(ways[:9])
+        )
 
     def _choose(self, answer: WayAnswer) -> tuple[bool, str]:
         if answer.verdict is None or answer.outcome == "stop":

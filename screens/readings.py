@@ -118,7 +118,9 @@ class Readings(Pane):
         if entered.reading is not None and (entered.reading.doubt or entered.reading.needs_taken):
             self._bell()
         self._on()
-        return True, ""
+        # What was understood of an unusual unit is said even though the cursor has moved on.
+        told = entered.remark is None or entered.sentence != entered.remark.sentence
+        return True, shorten(entered.sentence, 74) if told else ""
 
     def _enter_alone(self, cell: Cell) -> tuple[bool, str]:
         """Enter without typing: confirm a doubtful value, else go on."""

@@ -161,6 +161,8 @@ class Shelf(Pane):
     def notes(self) -> tuple[str, str]:
         """How many there are, and what to do."""
         bad = sum(bool(row.problem) for row in self.rows)
+        if not self.rows:
+            return ("", "ok  An invented job to try: fieldtool sample_jobs/larch_row.json")
         said = f"ok  {len(self.rows)} jobs, all readable." if not bad else f"??  {bad} files cannot be opened."
         return ("", said)
 

@@ -7,11 +7,12 @@ from typing import Any
 
 from rich.text import Text
 
-from fieldtool.answers import MARKS, VERDICT_WORDS, Finding, Headroom, Verdict
+from fieldtool.answers import VERDICT_WORDS, Finding, Headroom, Verdict
 from fieldtool.quantities.show import plain, shorten
 from fieldtool.reference.edition import EDITION_SENTENCE
 from screens.base import Action, Line, Pane, Target
 from screens.widgets.bars import bar
+from screens.widgets.findings import finding_text
 from screens.workbench import Workbench
 
 __all__ = ["VerdictPane"]
@@ -103,14 +104,7 @@ class VerdictPane(Pane):
 
     def _finding(self, number: int, finding: Finding) -> list[Line]:
         palette, here = self.palette, number == self.cursor
-        mark = MARKS[finding.outcome]
-        line = Text(no_wrap=True, overflow="crop")
-        line.append(f"{'>' if here else ' '} ", style=f"bold {palette.text}")
-        line.append(mark, style=palette.mark(mark))
-        room = max(24, self.size.width - 24)
-        style = f"bold {palette.text}" if here else palette.text
-        line.append(f"  {shorten(plain(finding.says), room):<{room}}", style=style)
-        line.append(f"  {finding.clause}", style=palette.muted)
+        line = finding_text(finding, palette, self.size.width, lead=f"{'>' if here else ' '} ", strong=here)
         out = [Line(line, number)]
         if number == self.open_at:
             for text in (

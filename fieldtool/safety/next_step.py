@@ -372,7 +372,11 @@ def _asked_for(
         why = first[0].says if first else ""
         return _step("Do not start: look at the reasons, or another way (F5).", why, "stopped")
     if request.chosen_way is None:
-        return _step("Choose the way: F4, its digit, then Enter.", "The verdict is kept for the way you choose.", "ask")
+        return _step(
+            "Choose the way: F4, then / and its digit, then Enter.",
+            "The verdict is kept for the way you choose.",
+            "ask",
+        )
     place = request.at or request.swap or "board"
     if place not in found.places:
         return _log_step(job, circuit_id, now, place)
@@ -500,7 +504,6 @@ def strip(job: Job, circuit_id: str | None, now: datetime) -> StateView:
         places=found.places,
         lapses_at="" if found.lapses_at is None else _clock(found.lapses_at, now),
         parted=tuple(row.what for row in outstanding(job)),
-        treat_as_live=not found.dead,
     )
 
 

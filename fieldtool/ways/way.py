@@ -9,7 +9,7 @@ from __future__ import annotations
 import importlib
 import pkgutil
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from functools import cache
 from typing import Literal
 
@@ -20,7 +20,7 @@ from fieldtool.job.kinds import WayKey
 from fieldtool.job.place import Device, Rcd
 from fieldtool.job.request import Request
 from fieldtool.network.as_found import AsFound, cable_ohms
-from fieldtool.network.layout import BOARD, Layout, LayoutRun, Ohms
+from fieldtool.network.layout import Layout, LayoutRun, Ohms
 
 __all__ = ["WAYS", "Edit", "Refusal", "Setting", "Way", "chain_of", "every_way", "way"]
 
@@ -93,7 +93,6 @@ class Edit:
     own_circuit: bool = False
     keeps_old_link: bool = False
     disturbs_ring: bool = False
-    from_joint_box: bool = False
     hung: bool = True
     terminals: tuple[tuple[str, tuple[float, ...]], ...] = ()
     material: tuple[Material, ...] = ()
@@ -102,7 +101,6 @@ class Edit:
     work: int = 1
     conditions: tuple[str, ...] = ()
     assumed: tuple[str, ...] = ()
-    load_nodes: tuple[str, ...] = field(default=())
 
 
 Apply = Callable[[Setting], Edit | Refusal]
@@ -159,8 +157,3 @@ def chain_of(setting: Setting, start: str, *, cable: str | None = None) -> tuple
         )
         at = outlet.id
     return tuple(runs)
-
-
-def is_board(place: str | None) -> bool:
-    """True where a place of attachment is the board itself."""
-    return place in (None, BOARD)

@@ -31,7 +31,6 @@ class Isolation(Sheet):
         self.asking: LogStep | None = None
         self.volts: list[float] = []
         self.place = "board"
-        self._choosing_place = False
 
     def steps(self) -> tuple[LogStep, ...]:
         """The steps for this circuit at the place of work."""

@@ -7,6 +7,7 @@ from textual.containers import Grid
 from textual.widgets import Button
 
 from screens.base import Action, Sheet, Target
+from screens.widgets.number_pad import big_key
 
 __all__ = ["Menu"]
 
@@ -42,15 +43,9 @@ class Menu(Sheet):
         """The keys."""
         with Grid():
             for number, action in enumerate(self._every()):
-                button = Button(f"{action.key} {action.words}".strip(), id=f"menu-{number}")
-                button.can_focus = False
-                button.styles.line_pad = 0
-                yield button
+                yield big_key(f"{action.key} {action.words}".strip(), f"menu-{number}")
             for name, words in (("theme", "light, dark, plain"), ("pad", "number pad"), ("leave", "leave")):
-                button = Button(words, id=f"menu-{name}")
-                button.can_focus = False
-                button.styles.line_pad = 0
-                yield button
+                yield big_key(words, f"menu-{name}")
 
     def on_button_pressed(self, event: Button.Pressed) -> None:
         """A key was touched."""

@@ -4,13 +4,14 @@ from __future__ import annotations
 
 from rich.text import Text
 
-from fieldtool.answers import MARKS, VERDICT_WORDS, WayAnswer
+from fieldtool.answers import VERDICT_WORDS, WayAnswer
 from fieldtool.job.job import Job
 from fieldtool.quantities.entry import Entry
 from fieldtool.quantities.show import plain, shorten
 from fieldtool.spot import UNKNOWN, Question, SpotProblem, accept, asked, judge_spot
 from screens.base import Action, Line, Sheet, Target
 from screens.widgets.bars import bar
+from screens.widgets.findings import counted, finding_text
 from screens.workbench import Workbench
 
 __all__ = ["SpotCheck"]
@@ -75,13 +76,7 @@ class SpotCheck(Sheet):
             ),
             Line(Text("")),
         ]
-        for finding in verdict.findings:
-            if finding.outcome in ("broken", "condition", "cannot_tell") and not finding.advice:
-                mark = MARKS[finding.outcome]
-                text = Text(no_wrap=True, overflow="crop")
-                text.append(f"  {mark}", style=palette.mark(mark))
-                text.append(f"  {plain(finding.says)}  {finding.clause}", style=palette.text)
-                out.append(Line(text))
+        out += [Line(finding_text(f, palette, self.size.width)) for f in counted(verdict.findings)]
         out += [
             Line(Text(f"  if  {plain(line)}", style=palette.text, no_wrap=True, overflow="ellipsis"))
             for line in verdict.conditions

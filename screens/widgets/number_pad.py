@@ -11,7 +11,7 @@ from textual.widgets import Button
 if TYPE_CHECKING:
     from screens.workbench import Workbench
 
-__all__ = ["KEYS", "NumberPad"]
+__all__ = ["KEYS", "NumberPad", "big_key"]
 
 KEYS: tuple[tuple[str, str], ...] = (
     ("7", "7"), ("8", "8"), ("9", "9"), ("<x", "backspace"),
@@ -42,16 +42,21 @@ class NumberPad(Grid, can_focus=False):
     def compose(self) -> ComposeResult:
         """The keys, none of which takes the focus."""
         for label, meaning in KEYS:
-            button = Button(label, id=f"key-{_name(meaning)}")
-            button.can_focus = False
-            button.styles.line_pad = 0
-            yield button
+            yield big_key(label, f"key-{_name(meaning)}")
 
     def on_button_pressed(self, event: Button.Pressed) -> None:
         """A key was touched: the same as typing it."""
         event.stop()
         meaning = next(key for _, key in KEYS if f"key-{_name(key)}" == event.button.id)
         self.bench.pad_key(meaning)
+
+
+def big_key(label: str, key_id: str) -> Button:
+    """A key for a thumb: never takes the focus, and shows its whole label."""
+    button = Button(label, id=key_id)
+    button.can_focus = False
+    button.styles.line_pad = 0
+    return button
 
 
 def _name(meaning: str) -> str:

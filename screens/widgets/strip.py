@@ -50,7 +50,7 @@ class Strip(Widget, can_focus=False):
         out = Text(no_wrap=True, overflow="crop", end="")
         out.append(first, style=f"bold {front} on {ground}")
         out.append("\n")
-        why = "F9 why" if width >= 76 else ""
+        why = "F9 why" if width >= 76 and self.step is not None and self.step.kind != "choose" else ""
         out.append(self._two(f" NEXT  {plain(step)}", why, width), style=f"bold {palette.text} on {palette.panel}")
         out.append("\n")
         out.append(self._two(f" MIND  {plain(mind)}", self.saved, width), style=f"{palette.text} on {palette.panel}")

@@ -246,6 +246,22 @@ async def test_the_verdict_says_what_keeps_the_work_from_being_finished(tmp_path
         assert "not finished" in bench.front.notes()[1]
 
 
+async def test_the_way_is_chosen_as_the_next_step_says(tmp_path: Path) -> None:
+    app = app_on(tmp_path)
+    async with app.run_test(size=(80, 24)) as pilot:
+        await settled(pilot, app)
+        bench = app.bench
+        assert bench is not None
+        assert bench.visit is not None
+        await pilot.pause(1.0)
+        assert bench.core()[1].sentence == "Choose the way: F4, then / and its digit, then Enter."
+        await pilot.press("f4")
+        typed(app, "/2\n")
+        await pilot.pause(0.4)
+        assert bench.visit.job.requests[0].chosen_way == "fused_spur"
+        assert bench.front.key == "verdict"
+
+
 async def test_a_screen_without_the_strip_is_refused(tmp_path: Path) -> None:
     app = app_on(tmp_path)
     async with app.run_test(size=(80, 24)):

@@ -1,0 +1,28 @@
+"""One finding on one line: its mark, its sentence, its regulation. The same everywhere it is shown."""
+
+from __future__ import annotations
+
+from rich.text import Text
+
+from fieldtool.answers import MARKS, Finding
+from fieldtool.quantities.show import plain, shorten
+from screens.theme import Palette
+
+__all__ = ["counted", "finding_text"]
+
+
+def counted(findings: tuple[Finding, ...]) -> list[Finding]:
+    """The findings that keep a verdict from being a plain yes, advice left out."""
+    return [f for f in findings if f.outcome in ("broken", "condition", "cannot_tell") and not f.advice]
+
+
+def finding_text(finding: Finding, palette: Palette, width: int, *, lead: str = "  ", strong: bool = False) -> Text:
+    """A finding in ``width`` cells, its sentence cut before its regulation is."""
+    mark = MARKS[finding.outcome]
+    room = max(24, width - len(lead) - len(mark) - 20)
+    out = Text(lead, no_wrap=True, overflow="crop", style=f"bold {palette.text}")
+    out.append(mark, style=palette.mark(mark))
+    says = shorten(plain(finding.says), room)
+    out.append(f"  {says:<{room}}", style=f"{'bold' if strong else 'not bold'} {palette.text}")
+    out.append(f"  {finding.clause}", style=f"not bold {palette.muted}")
+    return out
