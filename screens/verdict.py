@@ -275,7 +275,7 @@ class VerdictPane(Pane):
         request = visit.job.request(request_id)
         if request.work_done_at is None and request.abandoned_at is None:
             return ""
-        from fieldtool.safety.next_step import finished
+        from fieldtool.safety.after import finished
         from fieldtool.verdict.predict import held_against
 
         answer = visit.answer(request_id) if visit.has_ways(request_id) else None

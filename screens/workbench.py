@@ -391,7 +391,8 @@ class Workbench(Screen[None]):
 
     def core(self) -> tuple[StateView, NextStep]:
         """The strip's sentences as the core gives them now."""
-        from fieldtool.safety.next_step import next_step, shelf_step, strip
+        from fieldtool.safety.next_step import next_step, shelf_step
+        from fieldtool.safety.strip import strip
 
         if self.visit is None:
             return strip(Job(), None, self.field.clock()), shelf_step()

@@ -1,4 +1,4 @@
-"""The one next safe step, and the strip: state plate and reminders, each a whole sentence within its cells.
+"""The one next safe step, a whole sentence within its cells, with its reason.
 
 Works from the job, the time and what was already judged; it computes no network.
 """
@@ -8,35 +8,19 @@ from __future__ import annotations
 from collections.abc import Iterable
 from datetime import datetime
 
-from fieldtool.answers import CircuitReading, Missing, NextStep, StateView, StateWord, Verdict
-from fieldtool.job.isolation import Parted
+from fieldtool.answers import CircuitReading, Missing, NextStep, Verdict
 from fieldtool.job.job import Job
 from fieldtool.job.kinds import TESTS
-from fieldtool.job.reading import Reading
 from fieldtool.job.request import Request
-from fieldtool.quantities.show import cells, shorten
-from fieldtool.reference.edition import EDITION_SHORT
+from fieldtool.quantities.show import shorten
+from fieldtool.safety.after import after_work
+from fieldtool.safety.budget import NAME_CELLS, fit, name_of
 from fieldtool.safety.log import steps
 from fieldtool.safety.parting import outstanding
-from fieldtool.safety.states import WARNINGS, CircuitState, blocked_by, state
+from fieldtool.safety.states import CircuitState, blocked_by, state
 from fieldtool.safety.tasks import AFTER, RADIAL, RING, Task
 
-__all__ = ["MIND_CELLS", "NEXT_CELLS", "after_work", "finished", "next_step", "shelf_step", "strip"]
-
-NEXT_CELLS = 66
-MIND_CELLS = 58
-NAME_CELLS = 15
-
-_PLATES: dict[StateWord, tuple[str, str]] = {
-    "not_known": ("??? NOT KNOWN: TREAT AS LIVE ???", "??? NOT KNOWN: TREAT AS LIVE ???"),
-    "live": ("~~~ LIVE ~~~", "~~~ LIVE ~~~"),
-    "off_not_proved": ("─/ ─ OFF, NOT PROVED DEAD: TREAT AS LIVE", "-/ - OFF, NOT PROVED DEAD: TREAT AS LIVE"),
-    "origin_test": ("~~~ ORIGIN TEST: INCOMING LIVE ~~~", "~~~ ORIGIN TEST: INCOMING LIVE ~~~"),
-    "proved_dead": ("═══ PROVED DEAD ═══", "=== PROVED DEAD ==="),
-    "board_dead": ("═══ BOARD DEAD, INCOMING LIVE ═══", "=== BOARD DEAD, INCOMING LIVE ==="),
-}
-
-_WORST: tuple[StateWord, ...] = ("live", "origin_test", "not_known", "off_not_proved", "proved_dead", "board_dead")
+__all__ = ["next_step", "shelf_step"]
 
 _DO: dict[str, tuple[str, str]] = {
     "survey_eye": (
@@ -80,16 +64,8 @@ _DO: dict[str, tuple[str, str]] = {
 }
 
 
-def _fit(sentence: str, most: int = NEXT_CELLS) -> str:
-    return sentence if cells(sentence) <= most else shorten(sentence, most)
-
-
-def _name(job: Job, place: str | None) -> str:
-    return shorten(job.point_name(place), NAME_CELLS)
-
-
 def _step(sentence: str, why: str, kind: str, **where: str) -> NextStep:
-    return NextStep(_fit(sentence), why, kind, **where)
+    return NextStep(fit(sentence), why, kind, **where)
 
 
 def shelf_step() -> NextStep:
@@ -157,7 +133,7 @@ def _waiting(job: Job, circuit_id: str, found: CircuitState) -> NextStep | None:
     if doubtful:
         last = doubtful[-1]
         return _step(
-            f"Look again at {_name(job, last.point)}: {last.raw} is not likely. - goes back to it.",
+            f"Look again at {name_of(job, last.point)}: {last.raw} is not likely. - goes back to it.",
             last.doubt,
             "doubt",
             place=last.point or "",
@@ -170,7 +146,7 @@ def _slips(job: Job, circuit_id: str, reading: CircuitReading | None) -> NextSte
     leading = reading.leading if reading is not None else None
     if leading is not None and leading.id == "ends_joined_wrongly":
         points = job.points_of(circuit_id)
-        first = _name(job, points[0].id) if points else "the first point"
+        first = name_of(job, points[0].id) if points else "the first point"
         return _step(
             f"At the board: swap the two pairs, then start again at {first}.", leading.sentence, "slip", test="ln_cross"
         )
@@ -196,7 +172,7 @@ def _log_step(job: Job, circuit_id: str, now: datetime, place: str) -> NextStep:
     circuit = shorten(job.circuit(circuit_id).name or circuit_id, NAME_CELLS)
     found = state(job, circuit_id, now)
     return _step(
-        sentence.format(circuit=circuit, place=_name(job, place)),
+        sentence.format(circuit=circuit, place=name_of(job, place)),
         f"{why} {found.reason}".strip(),
         due.kind,
         place=place,
@@ -244,10 +220,10 @@ def _take(
     if arranged is not None:
         return arranged
     if task is None:
-        return _step(f"Read {spec.words} at {_name(job, place)}.", "The verdict waits for it.", first.test, **where)
+        return _step(f"Read {spec.words} at {name_of(job, place)}.", "The verdict waits for it.", first.test, **where)
     left = sum(gap.test == first.test for gap in gaps)
     return _step(
-        task.words.format(test=spec.words, place=_name(job, place)),
+        task.words.format(test=spec.words, place=name_of(job, place)),
         f"{left} of this test to go. {task.why}".strip(),
         first.test,
         **where,
@@ -322,9 +298,9 @@ def _live(
         )
     spec = TESTS[first.test]  # type: ignore[index]
     if first.test == "zs":
-        sentence = f"Covers on: read Zs at {_name(job, first.place)}, high-current if it can."
+        sentence = f"Covers on: read Zs at {name_of(job, first.place)}, high-current if it can."
         if "again" in first.words:
-            sentence = f"Read Zs at {_name(job, first.place)} again, high-current test."
+            sentence = f"Read Zs at {name_of(job, first.place)} again, high-current test."
         return _step(sentence, "The no-trip test can be 0.3 Ω off.", "zs", **where)
     return _step(f"Read {spec.words}, covers on.", "The verdict waits for it.", first.test, **where)
 
@@ -381,59 +357,12 @@ def _asked_for(
     if place not in found.places:
         return _log_step(job, circuit_id, now, place)
     return _step(
-        AFTER[1].words.format(place=_name(job, place)),
+        AFTER[1].words.format(place=name_of(job, place)),
         "Proved dead there. Cut only what you have proved dead at the cut.",
         "work",
         place=place,
         circuit=circuit_id,
     )
-
-
-def after_work(job: Job, request: Request, repeat: tuple[str, ...] = ()) -> tuple[tuple[str, str, Reading | None], ...]:
-    """The tests to take after the work, in order, each with its place and the reading where it was taken.
-
-    ``repeat`` are the way's own tests; without them the fewest that any addition needs.
-    """
-    tests = repeat or ("r1_r2", "ir_live_e", "polarity", "zs", "rcd_ms", "function")
-    ordered = [test for test in TESTS if test in tests]
-    new = [outlet.id for outlet in request.outlets] or ([request.swap] if request.swap else [])
-    standing = job.standing()
-    out: list[tuple[str, str, Reading | None]] = []
-    for test in ordered:
-        places = new if TESTS[test].where == "point" else [request.circuit]
-        for place in places:
-            point = place if TESTS[test].where == "point" else None
-            cell = (request.circuit, point, test, "after_work")
-            taken = next((r for r in reversed(standing) if r.cell == cell and (r.counts or r.why_not)), None)
-            out.append((test, place, taken))
-    return tuple(out)
-
-
-def finished(job: Job, request: Request, repeat: tuple[str, ...] = (), out_of_band: int = 0) -> tuple[str, ...]:
-    """What keeps the job from being called finished; empty where nothing does.
-
-    Abandoned counts as finished once its dead ends are recorded. One live Zs (or the earth read to the main
-    terminal) is what proves the earth back on its bar.
-    """
-    if request.abandoned_at is not None:
-        left = [] if any(entry.kind == "abandoned" for entry in job.isolation) else ["how it was left is not logged"]
-        return tuple(left)
-    reasons = [f"{row.what}: still {row.sort}" for row in outstanding(job, request.circuit)]
-    if request.work_done_at is None:
-        reasons.append("the work is not logged as done")
-    reasons += [
-        f"{TESTS[test].words} at {job.point_name(place)} not taken"  # type: ignore[index]
-        for test, place, taken in after_work(job, request, repeat)
-        if taken is None
-    ]
-    live = [r for r in job.standing() if r.circuit == request.circuit and r.stage == "after_work" and r.counts]
-    if not any(r.test in ("zs", "cpc_to_met") for r in live):
-        reasons.append("no live Zs after the work proves the earth back on its bar")
-    if out_of_band:
-        reasons.append(f"{out_of_band} readings are outside what was foretold")
-    if not any(entry.kind == "handed_over" and entry.circuit == request.circuit for entry in job.isolation):
-        reasons.append("not handed over")
-    return tuple(dict.fromkeys(reasons))
 
 
 def _after(
@@ -451,7 +380,7 @@ def _after(
         test, place = dead[0]
         if not found.dead:
             return _log_step(job, circuit_id, now, "board")
-        sentence = AFTER[2].words.format(test=TESTS[test].words, place=_name(job, place))  # type: ignore[index]
+        sentence = AFTER[2].words.format(test=TESTS[test].words, place=name_of(job, place))  # type: ignore[index]
         return _step(sentence, "Held against what was foretold before the work.", test, test=test, place=place)
     if outstanding(job, circuit_id):
         return _put_back(job, circuit_id) if found.dead else _log_step(job, circuit_id, now, "board")
@@ -459,7 +388,7 @@ def _after(
         return _step(AFTER[3].words, "Live tests come last, with covers on.", "restored", circuit=circuit_id)
     if due:
         test, place = due[0]
-        sentence = AFTER[4].words.format(test=TESTS[test].words, place=_name(job, place))  # type: ignore[index]
+        sentence = AFTER[4].words.format(test=TESTS[test].words, place=name_of(job, place))  # type: ignore[index]
         return _step(sentence, "Held against what was foretold before the work.", test, test=test, place=place)
     if not any(entry.kind == "handed_over" and entry.circuit == circuit_id for entry in job.isolation):
         return _step(AFTER[5].words, "The client has it in writing.", "handed_over", circuit=circuit_id)
@@ -475,69 +404,3 @@ def _abandoned(job: Job, circuit_id: str) -> NextStep:
         "abandoned",
         circuit=circuit_id,
     )
-
-
-def strip(job: Job, circuit_id: str | None, now: datetime) -> StateView:
-    """The strip's plate and reminders. Without a circuit, the worst state of all circuits that were touched."""
-    if circuit_id is None:
-        touched = {entry.circuit for entry in job.isolation if entry.circuit}
-        states = [state(job, item, now) for item in sorted(touched)]
-        found = min(states, key=lambda item: _WORST.index(item.word), default=CircuitState("not_known"))
-        if found.dead:
-            # Proved dead is said of a circuit that was chosen, never of a shelf or a board.
-            found = CircuitState("not_known", reason="No circuit chosen: treat every circuit as live.")
-    else:
-        found = state(job, circuit_id, now)
-    plate, plain = _PLATES[found.word]
-    if found.dead and found.proved_at is not None and found.lapses_at is not None:
-        where = ", ".join(_name(job, place) for place in found.places[:2])
-        more = f" +{len(found.places) - 2}" if len(found.places) > 2 else ""
-        at = "" if found.word == "board_dead" else f" at {where}{more}"
-        tail = f"{at} {_clock(found.proved_at, now)}, lapses {_clock(found.lapses_at, now)}"
-        plate, plain = plate + tail, plain + tail
-    return StateView(
-        state=found.word,
-        plate=plate,
-        plate_ascii=plain,
-        mind=_mind(job, found, now),
-        hot=not found.dead,
-        places=found.places,
-        lapses_at="" if found.lapses_at is None else _clock(found.lapses_at, now),
-        parted=tuple(row.what for row in outstanding(job)),
-    )
-
-
-def _mind(job: Job, found: CircuitState, now: datetime) -> str:
-    said: list[str] = []
-    if found.lapses_at is not None:
-        left = found.lapses_at - now
-        for early in sorted(WARNINGS):
-            if left <= early:
-                said.append(f"Proof lapses in {int(left.total_seconds() // 60)} min.")
-                break
-    rows = outstanding(job)
-    for sort, word in (("joined", "Joined"), ("parted", "Parted")):
-        mine = [row for row in rows if row.sort == sort]
-        if mine:
-            said.append(f"{word}: {_parted_words(job, mine)}.")
-    detail = dict(found.detail)
-    if "locked" in detail:
-        said.append("Locked, key kept.")
-    if not said:
-        return _fit(EDITION_SHORT, MIND_CELLS)
-    return _fit(" ".join(said), MIND_CELLS)
-
-
-def _parted_words(job: Job, rows: list[Parted]) -> str:
-    conductors = [row.conductor for row in rows]
-    legs = [letter for letter, key in (("L", "line"), ("N", "neutral"), ("E", "cpc")) if key in conductors]
-    if rows[0].sort == "parted" and len(legs) == len(rows):
-        return f"legs {' '.join(legs)} at {_name(job, rows[0].place)}"
-    first = shorten(rows[0].what, 28)
-    return first if len(rows) == 1 else f"{first} +{len(rows) - 1}"
-
-
-def _clock(moment: datetime, now: datetime) -> str:
-    """Local time as HH:MM, with the day in front when it is not today."""
-    here, today = moment.astimezone(), now.astimezone()
-    return f"{here:%H:%M}" if here.date() == today.date() else f"{here:%a %H:%M}"

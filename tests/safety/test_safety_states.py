@@ -14,10 +14,12 @@ from fieldtool.job.changes import Put, apply, new_ids, undo_changes
 from fieldtool.job.isolation import IsolationEntry, Parted
 from fieldtool.job.job import Job
 from fieldtool.quantities.show import cells
+from fieldtool.safety.budget import MIND_CELLS, NEXT_CELLS
 from fieldtool.safety.log import Accepted, Refused, accept, needs_taken, steps
-from fieldtool.safety.next_step import MIND_CELLS, NEXT_CELLS, next_step, shelf_step, strip
+from fieldtool.safety.next_step import next_step, shelf_step
 from fieldtool.safety.parting import may_part, may_restore, outstanding
 from fieldtool.safety.states import PROOF_LASTS, next_change, sequence, state
+from fieldtool.safety.strip import strip
 from fieldtool.verdict.compare import existing
 from tests.jobs import Facts, row, sample
 

@@ -13,7 +13,8 @@ from textual.pilot import Pilot
 from textual.screen import Screen
 
 from fieldtool.jobfile.shelf import open_sample
-from fieldtool.safety.next_step import next_step, strip
+from fieldtool.safety.next_step import next_step
+from fieldtool.safety.strip import strip
 from fieldtool.visit import Visit
 from screens.app import PANES, SHEETS, FieldApp
 from screens.theme import PALETTES, contrast

@@ -1,0 +1,58 @@
+"""After the work: the tests still to take, and what keeps the job from being finished."""
+
+from __future__ import annotations
+
+from fieldtool.job.job import Job
+from fieldtool.job.kinds import TESTS
+from fieldtool.job.reading import Reading
+from fieldtool.job.request import Request
+from fieldtool.safety.parting import outstanding
+
+__all__ = ["after_work", "finished"]
+
+
+def after_work(job: Job, request: Request, repeat: tuple[str, ...] = ()) -> tuple[tuple[str, str, Reading | None], ...]:
+    """The tests to take after the work, in order, each with its place and the reading where it was taken.
+
+    ``repeat`` are the way's own tests; without them the fewest that any addition needs.
+    """
+    tests = repeat or ("r1_r2", "ir_live_e", "polarity", "zs", "rcd_ms", "function")
+    ordered = [test for test in TESTS if test in tests]
+    new = [outlet.id for outlet in request.outlets] or ([request.swap] if request.swap else [])
+    standing = job.standing()
+    out: list[tuple[str, str, Reading | None]] = []
+    for test in ordered:
+        places = new if TESTS[test].where == "point" else [request.circuit]
+        for place in places:
+            point = place if TESTS[test].where == "point" else None
+            cell = (request.circuit, point, test, "after_work")
+            taken = next((r for r in reversed(standing) if r.cell == cell and (r.counts or r.why_not)), None)
+            out.append((test, place, taken))
+    return tuple(out)
+
+
+def finished(job: Job, request: Request, repeat: tuple[str, ...] = (), out_of_band: int = 0) -> tuple[str, ...]:
+    """What keeps the job from being called finished; empty where nothing does.
+
+    Abandoned counts as finished once its dead ends are recorded. One live Zs (or the earth read to the main
+    terminal) is what proves the earth back on its bar.
+    """
+    if request.abandoned_at is not None:
+        left = [] if any(entry.kind == "abandoned" for entry in job.isolation) else ["how it was left is not logged"]
+        return tuple(left)
+    reasons = [f"{row.what}: still {row.sort}" for row in outstanding(job, request.circuit)]
+    if request.work_done_at is None:
+        reasons.append("the work is not logged as done")
+    reasons += [
+        f"{TESTS[test].words} at {job.point_name(place)} not taken"  # type: ignore[index]
+        for test, place, taken in after_work(job, request, repeat)
+        if taken is None
+    ]
+    live = [r for r in job.standing() if r.circuit == request.circuit and r.stage == "after_work" and r.counts]
+    if not any(r.test in ("zs", "cpc_to_met") for r in live):
+        reasons.append("no live Zs after the work proves the earth back on its bar")
+    if out_of_band:
+        reasons.append(f"{out_of_band} readings are outside what was foretold")
+    if not any(entry.kind == "handed_over" and entry.circuit == request.circuit for entry in job.isolation):
+        reasons.append("not handed over")
+    return tuple(dict.fromkeys(reasons))
