@@ -164,7 +164,7 @@ def accept(question: Question, typed: str) -> str | Entry:
 
 
 _STOOD_FOR = (
-    "survey questions that a spot check leaves out are taken as sound: board, cut-out, heat, back-feed",
+    "board, cut-out, heat and back-feed were not asked: taken as sound",
     "place on the ring not given: taken as mid ring, the worst",
     "readings at the other points were not entered",
     "Z at the board is worked out from the fault current, not read",

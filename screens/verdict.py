@@ -12,7 +12,7 @@ from fieldtool.quantities.show import plain, shorten
 from fieldtool.reference.edition import EDITION_SENTENCE
 from screens.base import Action, Line, Pane, Target
 from screens.widgets.bars import bar
-from screens.widgets.findings import finding_text
+from screens.widgets.findings import finding_text, told
 from screens.workbench import Workbench
 
 __all__ = ["VerdictPane"]
@@ -66,16 +66,14 @@ class VerdictPane(Pane):
         out.append(Line(Text("")))
         out.extend(self._rooms(verdict))
         out.extend(self._predicted(verdict))
-        for line in verdict.conditions:
-            out.append(Line(Text(f"  condition: {plain(line)}", style=palette.text, no_wrap=True, overflow="ellipsis")))
-        for line in verdict.assumed[:6]:
-            out.append(Line(Text(f"  assumed: {plain(line)}", style=palette.muted, no_wrap=True, overflow="ellipsis")))
+        out.extend(told("condition: ", verdict.conditions, palette.text, self.size.width))
+        out.extend(told("assumed: ", verdict.assumed, palette.muted, self.size.width))
         out.append(Line(Text("")))
         out.append(Line(Text(f"  {EDITION_SENTENCE}", style=palette.muted, no_wrap=True, overflow="ellipsis")))
         out.append(
             Line(
                 Text(
-                    "  The book, the maker and your judgement decide. This checks; it does not permit.",
+                    "  The book, the maker and your judgement decide; this only checks.",
                     style=palette.muted,
                 )
             )

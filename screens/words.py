@@ -7,8 +7,9 @@ from typing import Any, get_args
 from pydantic.fields import FieldInfo
 
 from fieldtool.job.kinds import words
+from fieldtool.quantities.show import cells
 
-__all__ = ["POINT_MARK", "choice_words", "members_of", "show_value"]
+__all__ = ["POINT_MARK", "choice_words", "members_of", "show_value", "wrapped"]
 
 POINT_MARK = {"twin": "(2)", "single": "(1)", "fcu": "(F)", "appliance": "(A)", "joint": "(J)", "blank": "( )"}
 """How each kind of point is drawn, on the rail and on the map."""
@@ -53,3 +54,15 @@ def show_value(value: object) -> str:
     if isinstance(value, float):
         return f"{value:g}"
     return choice_words(value) if isinstance(value, str) else str(value)
+
+
+def wrapped(text: str, width: int) -> list[str]:
+    """A sentence over as many lines of ``width`` cells as it takes; nothing of it is cut."""
+    out, line = [], ""
+    for word in text.split():
+        if line and cells(line) + 1 + cells(word) > width:
+            out.append(line)
+            line = word
+        else:
+            line = f"{line} {word}".strip()
+    return [*out, line] if line else out or [""]

@@ -13,6 +13,7 @@ from fieldtool.quantities.show import plain, shorten
 from fieldtool.safety.log import LogStep
 from fieldtool.safety.parting import outstanding
 from screens.base import Action, Line, Sheet, Target
+from screens.words import wrapped
 from screens.workbench import Workbench
 
 __all__ = ["Isolation"]
@@ -55,7 +56,7 @@ class Isolation(Sheet):
             return [Line(Text("  Choose a circuit first: F2.", style=palette.text))]
         width = max(40, self.size.width - 4)
         out = [Line(Text(f" why: {part}" if not n else f"      {part}", style=palette.text))
-               for n, part in enumerate(_wrap(step.why, width - 6)[:3])]  # fmt: skip
+               for n, part in enumerate(wrapped(step.why, width - 6)[:3])]  # fmt: skip
         name = plain(visit.job.point_name(self.place))
         head = f" Isolation log   {plain(visit.job.circuit(self.bench.circuit).name)}   point of work: {name}"
         out.append(Line(Text(head, style=f"bold {palette.muted}")))
@@ -217,14 +218,3 @@ class Isolation(Sheet):
             "Lock, tester and who allowed it offer what was said last: Enter confirms the text.",
             "+ offers restoring, parting and putting back, and another place of work.",
         )
-
-
-def _wrap(text: str, width: int) -> list[str]:
-    out, line = [], ""
-    for word in text.split():
-        if line and len(line) + 1 + len(word) > width:
-            out.append(line)
-            line = word
-        else:
-            line = f"{line} {word}".strip()
-    return [*out, line] if line else out or [""]

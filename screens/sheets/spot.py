@@ -11,7 +11,7 @@ from fieldtool.quantities.show import plain, shorten
 from fieldtool.spot import UNKNOWN, Question, SpotProblem, accept, asked, judge_spot
 from screens.base import Action, Line, Sheet, Target
 from screens.widgets.bars import bar
-from screens.widgets.findings import counted, finding_text
+from screens.widgets.findings import counted, finding_text, told
 from screens.workbench import Workbench
 
 __all__ = ["SpotCheck"]
@@ -77,15 +77,7 @@ class SpotCheck(Sheet):
             Line(Text("")),
         ]
         out += [Line(finding_text(f, palette, self.size.width)) for f in counted(verdict.findings)]
-        out += [
-            Line(Text(f"  if  {plain(line)}", style=palette.text, no_wrap=True, overflow="ellipsis"))
-            for line in verdict.conditions
-        ]
-        for gap in verdict.missing:
-            text = Text("  ", no_wrap=True, overflow="crop")
-            text.append("??", style=palette.mark("??"))
-            text.append(f"  not known: {plain(gap.words)}", style=palette.text)
-            out.append(Line(text))
+        out += told("if  ", verdict.conditions, palette.text, self.size.width)
         for room in verdict.headroom:
             worst = max(
                 (f for f in verdict.findings if f.limit_key == room.limit_key and f.limit),
@@ -116,7 +108,7 @@ class SpotCheck(Sheet):
         out.append(
             Line(
                 Text(
-                    "  The book, the maker and your judgement decide. This checks; it does not permit.",
+                    "  The book, the maker and your judgement decide; this only checks.",
                     style=palette.muted,
                 )
             )

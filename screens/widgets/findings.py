@@ -6,9 +6,11 @@ from rich.text import Text
 
 from fieldtool.answers import MARKS, Finding
 from fieldtool.quantities.show import plain, shorten
+from screens.base import Line
 from screens.theme import Palette
+from screens.words import wrapped
 
-__all__ = ["counted", "finding_text"]
+__all__ = ["counted", "finding_text", "told"]
 
 
 def counted(findings: tuple[Finding, ...]) -> list[Finding]:
@@ -25,4 +27,13 @@ def finding_text(finding: Finding, palette: Palette, width: int, *, lead: str = 
     says = shorten(plain(finding.says), room)
     out.append(f"  {says:<{room}}", style=f"{'bold' if strong else 'not bold'} {palette.text}")
     out.append(f"  {finding.clause}", style=f"not bold {palette.muted}")
+    return out
+
+
+def told(lead: str, sentences: tuple[str, ...], style: str, width: int) -> list[Line]:
+    """Conditions or assumptions, each whole: what must be done before energising is never cut short."""
+    out: list[Line] = []
+    for sentence in sentences:
+        for number, part in enumerate(wrapped(plain(sentence), max(24, width - len(lead) - 4))):
+            out.append(Line(Text(f"  {lead if not number else ' ' * len(lead)}{part}", style=style)))
     return out

@@ -263,6 +263,21 @@ async def test_the_way_is_chosen_as_the_next_step_says(tmp_path: Path) -> None:
         assert bench.front.key == "verdict"
 
 
+async def test_no_condition_is_cut_short_on_the_verdict(tmp_path: Path) -> None:
+    app = app_on(tmp_path, "quarry_yard")
+    async with app.run_test(size=(60, 40)) as pilot:
+        await settled(pilot, app)
+        bench = app.bench
+        assert bench is not None
+        bench.show_pane("verdict")
+        await pilot.pause(1.0)
+        verdict = bench.verdict()
+        assert verdict is not None
+        assert verdict.conditions
+        shown = " ".join(" ".join(line.text.plain.split()) for line in bench.front.lines())
+        assert all(condition in shown for condition in verdict.conditions)
+
+
 async def test_a_screen_without_the_strip_is_refused(tmp_path: Path) -> None:
     app = app_on(tmp_path)
     async with app.run_test(size=(80, 24)):
