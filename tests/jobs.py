@@ -5,11 +5,13 @@ from __future__ import annotations
 import copy
 import json
 from collections.abc import Callable
+from datetime import UTC, datetime
 from functools import cache
 from pathlib import Path
 from typing import Any
 
 from fieldtool.job.job import Job
+from fieldtool.jobfile.opening import JobFile
 
 SAMPLES = Path(__file__).parent.parent / "sample_jobs"
 Facts = dict[str, Any]
@@ -83,3 +85,14 @@ def outlet(oid: str, metres: float, kind: str = "twin", **more: Any) -> Facts:
         "heating_or_cooking": "no",
         **more,
     }
+
+
+def empty_ring(path: Path, points: int) -> Path:
+    """A job file of a ring of so many sockets of which nothing was read yet; its path."""
+    body = facts("larch_row")
+    body["readings"], body["requests"], body["runs"] = [], [], []
+    body["points"] = [
+        {"id": f"p{n}", "circuit": "c3", "kind": "twin", "name": f"P{n}", "walk_order": n} for n in range(1, points + 1)
+    ]
+    JobFile.create(path, made(body), datetime(2026, 12, 1, 10, 0, tzinfo=UTC)).close()
+    return path

@@ -7,12 +7,15 @@ from pathlib import Path
 from typing import TextIO
 
 from fieldtool.commands.arguments import Parser, Usage
-from fieldtool.jobfile.opening import JobFile, Loaded, differences, load
+from fieldtool.jobfile.bytes_in import read_bytes
+from fieldtool.jobfile.opening import JobFile, Loaded, load
 from fieldtool.jobfile.problems import JobFileProblem, SaveProblem
+from fieldtool.jobfile.salvage import Rows, differences, rows_of, salvage
 from fieldtool.jobfile.swap import generations
 
 __all__ = ["run"]
 
+_MOST_LINES = 20
 EXAMPLE = "example: fieldtool mend kitchen.json --restore 1 -o kitchen-mended.json"
 
 
@@ -45,20 +48,33 @@ def _examine(path: Path, out: TextIO) -> int:
         out.write(f"{path.name}: good, generation {main.generation}, {len(main.job.readings)} readings.\n")
     else:
         out.write(f"{main}\n")
+    there = _rows(path, main)
     for number, item in enumerate(kept, start=1):
         found = _try(item)
         if isinstance(found, str):
             out.write(f"  generation {number}: {found}\n")
             continue
         out.write(f"  generation {number}: good, number {found.generation}, {len(found.job.readings)} readings\n")
-        if isinstance(main, Loaded):
-            for line in differences(found.job, main.job)[:20]:
-                out.write(f"    not in it: {line}\n")
+        lines = differences(found.job, there) if there is not None else ()
+        for line in lines[:_MOST_LINES]:
+            out.write(f"    only in {path.name}: {line}\n")
+        if len(lines) > _MOST_LINES:
+            out.write(f"    and {len(lines) - _MOST_LINES} more\n")
     if isinstance(main, Loaded):
         return 0
     if any(isinstance(_try(item), Loaded) for item in kept):
         out.write("Restore one to a copy: --restore N -o NEW.json\n")
     return 2
+
+
+def _rows(path: Path, main: Loaded | str) -> Rows | None:
+    """What the file itself holds, as far as it can be read; None where it is not there."""
+    if isinstance(main, Loaded):
+        return rows_of(main.job)
+    try:
+        return salvage(read_bytes(path))
+    except JobFileProblem:
+        return None
 
 
 def _try(path: Path) -> Loaded | str:

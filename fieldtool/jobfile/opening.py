@@ -13,16 +13,17 @@ from dataclasses import dataclass
 from datetime import datetime
 from pathlib import Path
 
-from fieldtool.job.job import ROW_TABLES, SCHEMA, Job
+from fieldtool.job.job import SCHEMA, Job
 from fieldtool.jobfile.bytes_in import document, read_bytes
 from fieldtool.jobfile.lock import WriterLock
 from fieldtool.jobfile.migrations import STEPS, migrate
 from fieldtool.jobfile.problems import JobFileProblem, SaveProblem
 from fieldtool.jobfile.rows import Serialiser, job_from, plain_rows
-from fieldtool.jobfile.storage import check_holds, open_tables
+from fieldtool.jobfile.salvage import UNREADABLE, differences, salvage
+from fieldtool.jobfile.storage import open_tables, seal_holds
 from fieldtool.jobfile.swap import Files, generations, said_of
 
-__all__ = ["JobFile", "Loaded", "differences", "load", "read_job"]
+__all__ = ["JobFile", "Loaded", "load", "read_job"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,6 +39,9 @@ class Loaded:
 def load(path: Path) -> Loaded:
     """The job in one file, checked. Raises JobFileProblem; nothing is written."""
     data = read_bytes(path)
+    seal = seal_holds(data)
+    if seal is False:
+        raise JobFileProblem("damaged", f"{path.name[:30]} is damaged: its content does not fit its seal.")
     body = plain_rows(document(data, path))
     about = body.get("about", {})
     if not isinstance(about, dict):
@@ -46,10 +50,8 @@ def load(path: Path) -> Loaded:
     if not isinstance(shape, int) or isinstance(shape, bool) or shape < 0:
         raise JobFileProblem("other-schema", f"{path.name[:30]} does not say which shape it has.")
     written = "generation" in about and about["generation"] is not None
-    if written != bool(about.get("check")):
+    if written != bool(about.get("check")) or (written and seal is None):
         raise JobFileProblem("damaged", f"{path.name[:30]} is damaged: its seal is half there.")
-    if written and not check_holds(data):
-        raise JobFileProblem("damaged", f"{path.name[:30]} is damaged: its content does not fit its seal.")
     generation = about.get("generation") or 0
     if shape > SCHEMA:
         about["schema"] = SCHEMA
@@ -70,19 +72,6 @@ def read_job(path: Path) -> Job:
     if loaded.newer:
         raise JobFileProblem("other-schema", f"{path.name[:30]} is of a newer make: update the tool to judge it.")
     return loaded.job
-
-
-def differences(older: Job, newer: Job | None) -> tuple[str, ...]:
-    """What stands in ``newer`` and not in ``older``, a line each; where ``newer`` cannot be read, nothing is known."""
-    if newer is None:
-        return ("What the damaged file held beyond this cannot be read.",)
-    out = []
-    for table in ROW_TABLES:
-        known = {row.id: row for row in getattr(older, table)}
-        for row in getattr(newer, table):
-            if known.get(row.id) != row:
-                out.append(f"{table}/{row.id}")
-    return tuple(out)
 
 
 class JobFile:
@@ -172,7 +161,7 @@ class JobFile:
                 loaded = load(kept)
                 # Written before anything is moved: whichever step fails, a good generation is still there.
                 made = cls(path, loaded, lock=lock, files=files)
-                made.differences = differences(loaded.job, _whatever_reads(path))
+                made.differences = differences(loaded.job, salvage(_whatever_is_there(path)))
                 aside = _set_aside(path) if lock is not None else None
                 when = datetime.fromtimestamp(kept.stat().st_mtime).astimezone().strftime("%H:%M")
                 said = f"The job file is damaged. The {when} copy is open; {_missing(made.differences)}"
@@ -253,17 +242,15 @@ def _stamp(path: Path) -> tuple[int, int] | None:
     return (found.st_mtime_ns, found.st_ino)
 
 
-def _whatever_reads(path: Path) -> Job | None:
-    """The job in a file whose seal does not hold, where its content can still be read; for telling what differs."""
-    try:
-        body = plain_rows(document(read_bytes(path), path))
-        return job_from(body, path)
-    except JobFileProblem:
-        return None
+def _whatever_is_there(path: Path) -> bytes:
+    """The bytes of a file that is damaged; none where there is none."""
+    with contextlib.suppress(JobFileProblem):
+        return read_bytes(path)
+    return b""
 
 
 def _missing(lines: Sequence[str]) -> str:
-    if any("cannot be read" in line for line in lines):
+    if UNREADABLE in lines:
         return "later entries are missing."
     return f"{len(lines)} entries differ." if lines else "nothing differs."
 

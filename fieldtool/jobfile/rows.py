@@ -8,15 +8,16 @@ own field names; both are read.
 from __future__ import annotations
 
 import json
+import operator
 from pathlib import Path
 from typing import Any
 
-import orjson
 from pydantic import ValidationError
 
 from fieldtool.job.changes import sentence_of
 from fieldtool.job.job import ROW_TABLES, SCHEMA, Job
 from fieldtool.jobfile.problems import JobFileProblem
+from fieldtool.jobfile.storage import PackedTable
 from fieldtool.quantities.show import plain, shorten
 
 __all__ = ["TABLES", "Serialiser", "job_from", "plain_rows"]
@@ -58,30 +59,43 @@ def job_from(body: dict[str, Any], path: Path, *, lenient: bool = False) -> Job:
 
 
 class Serialiser:
-    """A job as bytes. Rows that did not change since the last save are not turned into JSON again."""
+    """A job as text. Rows that did not change since the last save are not turned into JSON again.
+
+    Most saves add a row at the end of a table or two: what stands before it is kept as the text it was.
+    """
 
     def __init__(self) -> None:
-        self._known: dict[int, tuple[Any, Any]] = {}
+        self._packed: dict[str, tuple[tuple[Any, ...], bytearray]] = {}
+        self._rows: dict[int, tuple[Any, bytes]] = {}
 
-    def _row(self, row: Any, fresh: dict[int, tuple[Any, Any]]) -> Any:
-        kept = self._known.get(id(row))
-        if kept is not None and kept[0] is row:
-            packed = kept[1]
-        else:
-            packed = orjson.Fragment(row.model_dump_json(by_alias=True).encode())
-        fresh[id(row)] = (row, packed)
-        return packed
+    def _row(self, number: int, row: Any) -> bytes:
+        kept = self._rows.get(id(row))
+        if kept is None or kept[0] is not row:
+            kept = self._rows[id(row)] = (row, row.model_dump_json(by_alias=True).encode())
+        return b'  "%d": %b' % (number, kept[1])
+
+    def _table(self, name: str, rows: tuple[Any, ...]) -> PackedTable:
+        before, text = self._packed.get(name, ((), bytearray()))
+        if before is not rows:
+            # The same rows, not equal ones: two moments may be equal and read differently.
+            if len(rows) < len(before) or not all(map(operator.is_, before, rows)):
+                before, text = (), bytearray()
+            fresh = [self._row(number, row) for number, row in enumerate(rows[len(before) :], start=len(before) + 1)]
+            if fresh:
+                text += (b",\n" if text else b"") + b",\n".join(fresh)
+            self._packed[name] = (rows, text)
+        return PackedTable(text)
 
     def tables(self, job: Job, generation: int) -> dict[str, Any]:
         """Every table as TinyDB keeps it, rows packed, ``about`` with its generation and without its check."""
-        fresh: dict[int, tuple[Any, Any]] = {}
         about = job.about.model_copy(update={"schema_version": SCHEMA, "generation": generation, "check": None})
         plain_about = about.model_dump(mode="json", by_alias=True)
         plain_about.pop("check")
         out: dict[str, Any] = {"about": {"1": plain_about}}
         for name in TABLES[1:]:
             value = getattr(job, name)
-            rows = value if isinstance(value, tuple) else (value,)
-            out[name] = {str(number): self._row(row, fresh) for number, row in enumerate(rows, start=1)}
-        self._known = fresh
+            out[name] = self._table(name, value if isinstance(value, tuple) else (value,))
+        if len(self._rows) > 2 * sum(len(rows) for rows, _ in self._packed.values()):
+            alive = {id(row) for rows, _ in self._packed.values() for row in rows}
+            self._rows = {key: kept for key, kept in self._rows.items() if key in alive}
         return out

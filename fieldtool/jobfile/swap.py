@@ -10,6 +10,7 @@ import contextlib
 import errno
 import os
 import shutil
+import time
 from pathlib import Path
 
 from fieldtool.jobfile.problems import SaveProblem
@@ -24,6 +25,8 @@ class Files:
     """The file calls a save makes, in one seam: tests count, stop and fail them; a platform differs here alone."""
 
     folder_sync = os.name != "nt"
+    replace_tries = 20 if os.name == "nt" else 1
+    """Windows refuses to replace a file that a reader holds open; a reader holds it for milliseconds."""
 
     def write_new(self, path: Path, data: bytes) -> None:
         """Write a new file readable by its owner alone, flushed and synced."""
@@ -50,7 +53,19 @@ class Files:
         os.chmod(new, 0o600)
 
     def replace(self, old: Path, new: Path) -> None:
-        """Put a file in another's place in one step."""
+        """Put a file in another's place in one step; tried again for half a second where a reader is in the way."""
+        for left in reversed(range(self.replace_tries)):
+            try:
+                self.rename(old, new)
+            except PermissionError:
+                if not left:
+                    raise
+                time.sleep(0.025)
+            else:
+                return
+
+    def rename(self, old: Path, new: Path) -> None:
+        """The platform's own replacing rename."""
         os.replace(old, new)
 
     def remove(self, path: Path) -> None:

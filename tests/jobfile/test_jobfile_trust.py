@@ -11,6 +11,7 @@ import subprocess
 import sys
 from datetime import UTC, datetime, timedelta
 from pathlib import Path
+from typing import Any
 
 import pytest
 from hypothesis import given, settings
@@ -22,6 +23,8 @@ from fieldtool.job.place import Site
 from fieldtool.jobfile.bytes_in import document
 from fieldtool.jobfile.opening import JobFile, load, read_job
 from fieldtool.jobfile.problems import JobFileProblem, SaveProblem
+from fieldtool.jobfile.rows import job_from, plain_rows
+from fieldtool.jobfile.salvage import UNREADABLE
 from fieldtool.jobfile.shelf import free_path, open_sample, safe_name, shelf
 from fieldtool.jobfile.swap import Files, generations
 from tests.jobs import SAMPLES, facts
@@ -149,7 +152,7 @@ def test_random_flips_never_change_a_reading_in_silence(tmp_path: Path) -> None:
     path = open_sample(SAMPLES / "mill_cottages.json", tmp_path)
     data, whole = path.read_bytes(), read_job(path)
     rng = random.Random(7)
-    for _ in range(1500):
+    for _ in range(10_000):
         flipped = bytearray(data)
         flipped[rng.randrange(len(flipped))] ^= 1 << rng.randrange(8)
         path.write_bytes(bytes(flipped))
@@ -194,6 +197,64 @@ def test_a_medium_without_links_is_copied_instead(tmp_path: Path) -> None:
     file.save(small("after"))
     file.close()
     assert load(generations(path)[0]).job.site.name == "before"
+
+
+def test_a_reader_in_the_way_of_the_replace_is_waited_for(tmp_path: Path) -> None:
+    """Windows: no replace over a file that somebody holds open, no folder sync, no O_NOFOLLOW."""
+
+    class HeldOpen(Files):
+        folder_sync = False
+        replace_tries = 4
+        refused = 0
+
+        def rename(self, old: Path, new: Path) -> None:
+            if new.name == "job.json" and self.refused < self.most:
+                self.refused += 1
+                raise PermissionError(errno.EACCES, "held open by a reader")
+            super().rename(old, new)
+
+        most = 3
+
+    path = _saved_twice(tmp_path)
+    file = JobFile.open(path, NOW, files=HeldOpen())
+    file.save(small("after"))
+    assert read_job(path).site.name == "after"
+    held = HeldOpen()
+    held.most = 99
+    file._files = held
+    with pytest.raises(SaveProblem):
+        file.save(small("never"))
+    assert read_job(path).site.name == "after"
+    file._files = Files()
+    file.save(small("at last"))
+    file.close()
+    assert read_job(path).site.name == "at last"
+
+
+def test_what_a_damaged_file_held_is_told_row_by_row(tmp_path: Path) -> None:
+    """A reading that the opened copy lacks is named with its place and its figure, also from a file cut short."""
+    path = open_sample(SAMPLES / "larch_row.json", tmp_path)
+    file = JobFile.open(path, NOW)
+    job = file.job
+    point = job.points[0]
+    reading = job.readings[0].model_copy(
+        update={"id": "m900", "circuit": point.circuit, "point": point.id, "test": "zs", "stage": "as_found",
+                "value": 0.61, "raw": "0.61", "sign": "=", "replaces": None, "withdraws": None, "at": NOW}
+    )  # fmt: skip
+    file.save(apply(job, [Put("readings", reading)], at=NOW))
+    file.close()
+    whole = path.read_bytes()
+    for damaged in (whole.replace(b'"site"', b'"silt"'), whole[:-9]):
+        path.write_bytes(damaged)
+        opened = JobFile.open(path, NOW)
+        assert any("Zs" in line and point.name in line and "0.61" in line for line in opened.differences)
+        assert "damaged" in opened.notes[0]
+        opened.close()
+        next(tmp_path.glob("*.damaged-*")).unlink()
+    path.write_bytes(b"\x00" * 40)
+    opened = JobFile.open(path, NOW)
+    assert opened.differences == (UNREADABLE,)
+    opened.close()
 
 
 def test_a_second_opener_reads_and_keeps_up(tmp_path: Path) -> None:
@@ -307,6 +368,35 @@ def test_any_bytes_open_or_are_refused_in_a_sentence(data: bytes) -> None:
         assert problem.sentence
     else:
         assert isinstance(body, dict)
+
+
+SCALARS = (
+    st.none() | st.booleans() | st.integers() | st.floats(allow_nan=False, allow_infinity=False) | st.text(max_size=20)
+)
+ANY_JSON = st.recursive(SCALARS, lambda inner: st.lists(inner, max_size=3) | st.dictionaries(st.text(max_size=8), inner, max_size=3), max_leaves=6)  # fmt: skip
+
+
+@settings(max_examples=150, deadline=None)
+@given(st.data())
+def test_a_job_with_anything_in_the_place_of_anything_opens_or_is_refused_in_a_sentence(data: st.DataObject) -> None:
+    body = facts(data.draw(st.sampled_from(["larch_row", "quarry_yard"])))
+    place: Any = body
+    while True:
+        keys = sorted(place) if isinstance(place, dict) else list(range(len(place)))
+        key = data.draw(st.sampled_from(keys))
+        inner = place[key]
+        if not isinstance(inner, dict | list) or not inner or data.draw(st.integers(0, 4)) == 0:
+            place[key] = data.draw(ANY_JSON)
+            break
+        place = inner
+    try:
+        job = job_from(plain_rows(document(json.dumps(body).encode(), Path("x.json"))), Path("x.json"))
+    except JobFileProblem as problem:
+        assert problem.sentence
+        assert "\n" not in problem.sentence
+        assert len(problem.sentence) < 160
+    else:
+        assert isinstance(job, Job)
 
 
 def test_a_name_cannot_leave_its_folder(tmp_path: Path) -> None:

@@ -18,7 +18,8 @@ from fieldtool.safety.strip import strip
 from fieldtool.visit import Visit
 from screens.app import PANES, SHEETS, FieldApp
 from screens.theme import PALETTES, contrast
-from tests.jobs import SAMPLES, Facts, facts, made
+from tests.jobs import SAMPLES, facts, made
+from tests.jobs import empty_ring as ring_file
 
 from fieldtool.jobfile.opening import JobFile  # isort: skip
 
@@ -43,15 +44,8 @@ def app_on(tmp_path: Path, name: str = "larch_row", clock: Clock | None = None, 
 
 
 def empty_ring(tmp_path: Path, points: int, clock: Clock) -> FieldApp:
-    """A ring of which nothing was read yet."""
-    body: Facts = facts("larch_row")
-    body["readings"], body["requests"], body["runs"] = [], [], []
-    body["points"] = [
-        {"id": f"p{n}", "circuit": "c3", "kind": "twin", "name": f"P{n}", "walk_order": n} for n in range(1, points + 1)
-    ]
-    path = tmp_path / "ring.json"
-    JobFile.create(path, made(body), START).close()
-    return FieldApp(Visit.open(path, clock=clock), clock=clock)
+    """The app on a ring of which nothing was read yet."""
+    return FieldApp(Visit.open(ring_file(tmp_path / "ring.json", points), clock=clock), clock=clock)
 
 
 async def settled(pilot: Pilot[None], app: FieldApp) -> None:
