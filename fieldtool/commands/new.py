@@ -7,6 +7,7 @@ from pathlib import Path
 from typing import TextIO
 
 from fieldtool.commands.arguments import Parser, Usage
+from fieldtool.job.history import accounted
 from fieldtool.jobfile.opening import JobFile, read_job
 from fieldtool.jobfile.problems import JobFileProblem, SaveProblem
 
@@ -26,7 +27,8 @@ def run(args: list[str], out: TextIO, err: TextIO) -> int:
         if target.exists():
             raise Usage(f"{target.name} exists already; choose another name, nothing was overwritten")
         job = read_job(Path(given.facts))
-        JobFile.create(target, job, datetime.now(UTC)).close()
+        now = datetime.now(UTC)
+        JobFile.create(target, accounted(job, at=now), now).close()
     except (Usage, SaveProblem) as problem:
         err.write(f"fieldtool new: {problem}\n")
         return 2

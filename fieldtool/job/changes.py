@@ -13,8 +13,8 @@ from typing import Any, cast
 
 from pydantic import ValidationError
 
+from fieldtool.job.history import FOUND, SINGLES
 from fieldtool.job.job import ROW_TABLES, HistoryEntry, Job, TableName
-from fieldtool.job.place import Site, Supply
 from fieldtool.job.rows import Row
 
 __all__ = [
@@ -24,7 +24,6 @@ __all__ = [
     "Put",
     "Remove",
     "apply",
-    "fold",
     "new_ids",
     "redo_changes",
     "redoable",
@@ -35,8 +34,6 @@ __all__ = [
 
 APPEND_ONLY: frozenset[str] = frozenset({"readings", "isolation", "verdicts"})
 """Tables whose rows are never edited or taken out."""
-
-_SINGLES: dict[str, type[Row]] = {"site": Site, "supply": Supply}
 
 
 class ChangeProblem(ValueError):
@@ -136,9 +133,9 @@ def _edit(job: Job, values: dict[str, Any], change: Change) -> tuple[str | None,
             row = type(change.row).model_validate_json(change.row.model_dump_json())
         except ValidationError as problem:
             raise ChangeProblem(f"{change.table}/{change.row.id}: {sentence_of(problem)}") from problem
-        if change.table in _SINGLES:
-            if not isinstance(row, _SINGLES[change.table]):
-                raise ChangeProblem(f"{change.table}: takes a {_SINGLES[change.table].__name__}")
+        if change.table in SINGLES:
+            if not isinstance(row, SINGLES[change.table]):
+                raise ChangeProblem(f"{change.table}: takes a {SINGLES[change.table].__name__}")
             old: Row = values.get(change.table, getattr(job, change.table))
             values[change.table] = row
             return old.model_dump_json(), row.model_dump_json(), change.table
@@ -166,7 +163,7 @@ def _edit(job: Job, values: dict[str, Any], change: Change) -> tuple[str | None,
 
 def _row_from(what: str, text: str) -> tuple[str, Row]:
     table = what.split("/", 1)[0]
-    model = _SINGLES.get(table) or ROW_TABLES[cast(TableName, table)]
+    model = SINGLES.get(table) or ROW_TABLES[cast(TableName, table)]
     return table, model.model_validate_json(text)
 
 
@@ -175,6 +172,12 @@ def _groups(job: Job) -> list[list[HistoryEntry]]:
     for entry in job.history:
         groups.setdefault(entry.group or entry.n, []).append(entry)
     return list(groups.values())
+
+
+def _can_be_undone(group: Sequence[HistoryEntry]) -> bool:
+    return all(
+        entry.what.split("/", 1)[0] not in ("isolation", "parted", "verdicts") and entry.why != FOUND for entry in group
+    )
 
 
 def undoable(job: Job) -> tuple[int, ...]:
@@ -189,7 +192,7 @@ def undoable(job: Job) -> tuple[int, ...]:
         number = group[0].group or group[0].n
         undoes = group[0].undoes
         if undoes is None:
-            if all(entry.what.split("/", 1)[0] not in ("isolation", "parted", "verdicts") for entry in group):
+            if _can_be_undone(group):
                 done.append(number)
                 undone.clear()
         elif undoes in done:
@@ -209,7 +212,7 @@ def redoable(job: Job) -> tuple[int, ...]:
         number = group[0].group or group[0].n
         undoes = group[0].undoes
         if undoes is None:
-            if all(entry.what.split("/", 1)[0] not in ("isolation", "parted", "verdicts") for entry in group):
+            if _can_be_undone(group):
                 done.add(number)
                 undone.clear()
         elif undoes in undone:
@@ -266,21 +269,3 @@ def _withdrawal(job: Job, entry: HistoryEntry, at: datetime) -> tuple[Job, Chang
     else:
         row = back.model_copy(update={"id": row_id, "replaces": reading.id, "withdraws": None})
     return job, Put("readings", row)
-
-
-def fold(history: Iterable[HistoryEntry]) -> dict[str, Any]:
-    """What the history says stands now: table -> rows (or the single row), from an empty job.
-
-    Equals the stored state of any job whose whole content went through ``apply``; a hand-written file starts
-    with one entry per row that it held.
-    """
-    state: dict[str, Any] = {name: {} for name in ROW_TABLES}
-    for entry in history:
-        table, _, row_id = entry.what.partition("/")
-        if table in _SINGLES:
-            state[table] = entry.now
-        elif entry.now is None:
-            state[table].pop(row_id, None)
-        else:
-            state[table][row_id] = entry.now
-    return state

@@ -11,6 +11,7 @@ from pathlib import Path
 
 from platformdirs import user_data_path
 
+from fieldtool.job.history import accounted
 from fieldtool.job.job import Job
 from fieldtool.jobfile.opening import JobFile, load, make_folder
 from fieldtool.jobfile.problems import JobFileProblem
@@ -74,7 +75,7 @@ def shelf(folder: Path) -> tuple[ShelfRow, ...]:
 
 def open_sample(sample: Path, folder: Path) -> Path:
     """A copy of an invented sample in the job folder, so that the sample stays as it is; its path."""
-    job = load(sample).job
+    now = datetime.now(UTC)
     path = free_path(folder, sample.stem)
-    JobFile.create(path, job, datetime.now(UTC)).close()
+    JobFile.create(path, accounted(load(sample).job, at=now), now).close()
     return path

@@ -17,6 +17,7 @@ from fieldtool.job.changes import (
     redo_changes,
     undo_changes,
 )
+from fieldtool.job.history import accounted
 from fieldtool.job.isolation import IsolationEntry
 from fieldtool.job.job import Job
 from fieldtool.job.kinds import TESTS
@@ -53,6 +54,7 @@ class OpenJob:
         """Open a job. A writer's opening is logged: whatever was proved before no longer counts."""
         visit = cls(JobFile.open(path, clock(), want_write=want_write), clock=clock, by=by)
         if not visit.read_only:
+            visit.job = accounted(visit.job, at=clock())
             visit._log_opening()
         return visit
 
@@ -63,7 +65,8 @@ class OpenJob:
         from fieldtool.jobfile.shelf import free_path
 
         job = Job(site=Site(name=name), boards=(Board(id="b1", name="board 1"),))
-        visit = cls(JobFile.create(free_path(folder, name), job, clock()), clock=clock, by=by)
+        file = JobFile.create(free_path(folder, name), accounted(job, at=clock()), clock())
+        visit = cls(file, clock=clock, by=by)
         visit._log_opening()
         return visit
 

@@ -9,12 +9,14 @@ from hypothesis import given
 from hypothesis import strategies as st
 from pydantic import ValidationError
 
-from fieldtool.job.changes import ChangeProblem, Put, Remove, apply, fold, new_ids, redo_changes, undo_changes
+from fieldtool.job.changes import ChangeProblem, Put, Remove, apply, new_ids, redo_changes, undo_changes
 from fieldtool.job.circuit import Circuit, Point
+from fieldtool.job.history import accounted, fold
 from fieldtool.job.isolation import IsolationEntry
 from fieldtool.job.job import ROW_TABLES, Job
 from fieldtool.job.place import Board, Site
 from fieldtool.job.reading import Reading
+from tests.jobs import facts, made
 
 NOW = datetime(2026, 12, 1, 9, 0, tzinfo=UTC)
 
@@ -39,7 +41,10 @@ def folded_equals(job: Job) -> bool:
         stored = {row.id: row.model_dump_json() for row in getattr(job, table)}
         if stored != state[table]:
             return False
-    return state.get("site", job.site.model_dump_json()) == job.site.model_dump_json()
+    return all(
+        state.get(name, type(row)().model_dump_json()) == row.model_dump_json()
+        for name, row in (("site", job.site), ("supply", job.supply))
+    )
 
 
 STEPS = st.lists(
@@ -74,6 +79,31 @@ def test_folding_the_history_from_an_empty_job_gives_the_stored_state(steps: lis
             job = apply(job, [Remove("points", spare[0])], at=now) if spare else job
         assert folded_equals(job)
         assert [entry.n for entry in job.history] == list(range(1, len(job.history) + 1))
+
+
+@given(STEPS)
+def test_a_file_edited_by_hand_has_a_history_that_adds_up_and_nothing_found_in_it_is_undone(steps: list[str]) -> None:
+    """Rows that no entry made are told as found in the file; what the person then enters can still be undone."""
+    body = facts("larch_row")
+    job = made(body)
+    assert not folded_equals(job)
+    job = accounted(job, at=NOW)
+    assert folded_equals(job)
+    assert accounted(job, at=NOW) is job
+    assert undo_changes(job, at=NOW) is None
+    for step in steps:
+        turned = {"undo": undo_changes, "redo": redo_changes}.get(step)
+        if turned is not None:
+            job = turned(job, at=NOW) or job
+        else:
+            job = apply(job, [Put("site", Site(name=f"{step} {len(job.history)}"))], at=NOW)
+        assert folded_equals(job)
+    edited = job.model_copy(
+        update={"supply": job.supply.model_copy(update={"u0_v": 240.0}), "points": job.points[1:], "readings": ()}
+    )
+    told = accounted(edited, at=NOW)
+    assert folded_equals(told)
+    assert {entry.what for entry in told.history[len(job.history) :]} >= {"supply", f"points/{job.points[0].id}"}
 
 
 def test_undo_withdraws_a_reading_and_redo_brings_it_back() -> None:
