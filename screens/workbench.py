@@ -79,6 +79,8 @@ class Workbench(Screen[None]):
         self.under: list[tuple[Pane, str, int]] = []
         self.warm = False
         self.message = ""
+        self.next_kind = ""
+        self.next_why = ""
 
     # building ------------------------------------------------------------------------------------------------
     def compose(self) -> ComposeResult:
@@ -243,6 +245,7 @@ class Workbench(Screen[None]):
         except Exception as problem:
             self.field.note_problem(problem)
             return False, "That did not work and nothing changed. Try again; details: F1."
+        self.next_why = ""
         self.judge()
         self.refresh_all()
         return taken, said
@@ -396,11 +399,12 @@ class Workbench(Screen[None]):
 
         if self.visit is None:
             return strip(Job(), None, self.field.clock()), shelf_step()
-        job, now = self.visit.job, self.visit.clock()
+        job, now = self.visit.job, self.visit.now()
         verdict = self.verdict() if self.circuit is not None else None
         reading = self.visit.circuit_reading(self.circuit) if self.circuit is not None and self.warm else None
         request = self.visit.request_of(self.circuit) if self.circuit is not None else None
-        step = next_step(job, self.circuit, now, verdict=verdict, reading=reading, request_id=request)
+        repeat = self.visit.repeat_tests(request) if request is not None else ()
+        step = next_step(job, self.circuit, now, verdict=verdict, reading=reading, request_id=request, repeat=repeat)
         return strip(job, self.circuit, now), step
 
     def paint_strip(self) -> None:
@@ -408,6 +412,10 @@ class Workbench(Screen[None]):
         view, step = self.core()
         self.strip.ascii = self.field.ascii
         self.strip.show(view, step, self._circuit_words(), self._saved_words(), self.palette)
+        if step.kind != self.next_kind:
+            self.next_why = step.why if self.next_kind else ""
+            self.next_kind = step.kind
+            self._show_notes()
         if self.field.bell_on and self.field.last_state != view.state:
             if self.field.last_state:
                 self.app.bell()
@@ -449,13 +457,17 @@ class Workbench(Screen[None]):
         self.hint_row.display = self.size.height >= 14
         self.paint_strip()
         self.steps.show(self._steps())
-        first, second = self.front.notes()
-        problem = self.visit.save_problem if self.visit is not None else ""
-        self.note_rows[0].show(self._note(f"NO  {problem}" if problem else first))
-        self.note_rows[1].show(self._note(second))
+        self._show_notes()
         self.hint_row.show(Text(f" {self.front.hints()}", style=self.palette.muted, no_wrap=True, overflow="crop"))
         self.front.refresh()
         self.entry.refresh()
+
+    def _show_notes(self) -> None:
+        """The two rows over the entry line; where the second is free it says why the next step is another one now."""
+        first, second = self.front.notes()
+        problem = self.visit.save_problem if self.visit is not None else ""
+        self.note_rows[0].show(self._note(f"NO  {problem}" if problem else first))
+        self.note_rows[1].show(self._note(second or (f"--  NEXT is new: {self.next_why}" if self.next_why else "")))
 
     def _note(self, line: str) -> Text:
         mark, _, rest = line.partition("  ")

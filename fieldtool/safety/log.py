@@ -9,7 +9,7 @@ from typing import Literal
 from fieldtool.job.isolation import IsolationEntry
 from fieldtool.job.job import Job
 from fieldtool.job.kinds import TESTS, IsolationKind, words
-from fieldtool.safety.parting import may_restore
+from fieldtool.safety.parting import earth_unproved, may_restore
 from fieldtool.safety.states import blocked_by, both_poles_needed, sequence, state
 
 __all__ = ["HANDS_S", "Accepted", "LogStep", "Refused", "accept", "early_live", "needs_taken", "steps"]
@@ -159,8 +159,7 @@ def _refused(
     if circuit_id is None or kind in _ANY_TIME:
         return None
     if kind in _NEEDS_BACK:
-        why = may_restore(job, circuit_id)
-        return Refused(why, "put_back") if why else None
+        return _not_yet_back(job, kind, circuit_id, now)
     if kind == "origin_test_begins":
         done = dict(state(job, circuit_id, now).done)
         ready = "main_switch_off" in done and "locked" in done
@@ -190,6 +189,18 @@ def _refused(
     return _incomplete(kind, volts, found_well, tester, detail)
 
 
+def _not_yet_back(job: Job, kind: IsolationKind, circuit_id: str, now: datetime) -> Refused | None:
+    """Why the supply, the lock or the circuit may not be given back yet."""
+    if state(job, circuit_id, now).word == "origin_test":
+        return Refused("The origin test is not over: earth back and tight first, and log it.", "origin_test_ends")
+    why = may_restore(job, circuit_id)
+    if why:
+        return Refused(why, "put_back")
+    if kind == "handed_over" and earth_unproved(job, circuit_id):
+        return Refused("The earth was off its bar: one live Zs first proves that it is back.", "zs")
+    return None
+
+
 def _incomplete(
     kind: str,
     volts: tuple[float, float, float] | None,
@@ -214,10 +225,17 @@ def _number(wanted: tuple[str, ...], kind: str) -> str:
     return f"Step {wanted.index(kind) + 1}"
 
 
-def needs_taken(job: Job, circuit_id: str, test: str, place: str | None, now: datetime) -> bool:
-    """True where a dead reading is entered while the log does not say that its circuit is proved dead."""
-    del place  # a front read through an adaptor needs no proof of its own
-    return TESTS[test].state == "dead" and not state(job, circuit_id, now).dead  # type: ignore[index]
+def needs_taken(job: Job, circuit_id: str, test: str, place: str | None, now: datetime, probes: str = "front") -> bool:
+    """True where a dead reading is entered while the log does not say that its circuit is proved dead.
+
+    A reading through a closed front needs the circuit dead; one at terminals needs them proved dead themselves.
+    """
+    if TESTS[test].state != "dead":  # type: ignore[index]
+        return False
+    found = state(job, circuit_id, now)
+    if not found.dead:
+        return True
+    return probes == "terminals" and place is not None and place not in found.places
 
 
 def early_live(job: Job, circuit_id: str, test: str) -> str:

@@ -10,7 +10,7 @@ from fieldtool.job.job import Job
 from fieldtool.quantities.show import shorten
 from fieldtool.reference.edition import EDITION_SHORT
 from fieldtool.safety.budget import MIND_CELLS, fit, name_of
-from fieldtool.safety.parting import outstanding
+from fieldtool.safety.parting import earth_unproved, outstanding
 from fieldtool.safety.states import WARNINGS, CircuitState, state
 
 __all__ = ["strip"]
@@ -49,7 +49,7 @@ def strip(job: Job, circuit_id: str | None, now: datetime) -> StateView:
         state=found.word,
         plate=plate,
         plate_ascii=plain,
-        mind=_mind(job, found, now),
+        mind=_mind(job, circuit_id, found, now),
         hot=not found.dead,
         places=found.places,
         lapses_at="" if found.lapses_at is None else _clock(found.lapses_at, now),
@@ -57,7 +57,7 @@ def strip(job: Job, circuit_id: str | None, now: datetime) -> StateView:
     )
 
 
-def _mind(job: Job, found: CircuitState, now: datetime) -> str:
+def _mind(job: Job, circuit_id: str | None, found: CircuitState, now: datetime) -> str:
     said: list[str] = []
     if found.lapses_at is not None:
         left = found.lapses_at - now
@@ -70,6 +70,8 @@ def _mind(job: Job, found: CircuitState, now: datetime) -> str:
         mine = [row for row in rows if row.sort == sort]
         if mine:
             said.append(f"{word}: {_parted_words(job, mine)}.")
+    if circuit_id is not None and not rows and earth_unproved(job, circuit_id):
+        said.append("Earth back, not proved: one live Zs.")
     detail = dict(found.detail)
     if "locked" in detail:
         said.append("Locked, key kept.")

@@ -32,10 +32,10 @@ RING: tuple[Task, ...] = (
     Task("part", "At the board: part and mark legs A and B of L, N and E; log it.", "board_dead", parts=_LEGS),
     Task("step_1", "At the board, end to end, leads nulled: read {test}.", "board_dead", "r1"),
     Task("join_2", "At the board: join L to N of the other leg, both pairs; log it.", "board_dead", joins=_STEP_2),
-    Task("step_2", "Read L-N crossed at {place}. Nothing plugged in there?", "dead", "ln_cross"),
+    Task("step_2", "Front on, read L-N crossed at {place}. Nothing plugged in?", "dead", "ln_cross"),
     Task("unjoin_2", "At the board: take the L-N joins off, check them open.", "board_dead", back=("cross",)),
     Task("join_3", "At the board: join L to E of the other leg, both pairs; log it.", "board_dead", joins=_STEP_3),
-    Task("step_3", "Read L-E crossed at {place}. Nothing plugged in there?", "dead", "le_cross"),
+    Task("step_3", "Front on, read L-E crossed at {place}. Nothing plugged in?", "dead", "le_cross"),
     Task("unjoin_3", "At the board: take the L-E joins off, check them open.", "board_dead", back=("cross",)),
     Task("insulation", "Read {test} at the board; discharge before you touch.", "dead", "ir_ln"),
     Task("put_back", "At the board: put legs L N E back in the way, then say so.", "board_dead", back=("legs",)),
@@ -51,7 +51,7 @@ RADIAL: tuple[Task, ...] = (
     ),
     Task("legs", "Prove the legs at the way: no second end. Then say right.", "board_dead", "legs"),
     Task("join", "At the board: link line to earth; log it.", "board_dead", joins=(("line to earth", "link"),)),
-    Task("r1_r2", "Read R1+R2 at {place}.", "dead", "r1_r2"),
+    Task("r1_r2", "Front on, read R1+R2 at {place}.", "dead", "r1_r2"),
     Task("unjoin", "At the board: take the link off, check it open.", "board_dead", back=("link",)),
     Task("insulation", "Read {test} at the board; discharge before you touch.", "dead", "ir_ln"),
     Task("put_back", "At the board: put line and neutral back, then say so.", "board_dead", back=("ends",)),
@@ -61,9 +61,9 @@ RADIAL: tuple[Task, ...] = (
 AFTER: tuple[Task, ...] = (
     Task("prove_there", "Prove {place} dead before you open or cut anything there.", "dead"),
     Task("work", "Do the work at {place}; then log it done on Proposed work.", "dead"),
-    Task("dead_again", "After the work: read {test} at {place}.", "dead"),
+    Task("dead_again", "After the work: {what}", "dead"),
     Task("restore", "All back, covers on: restore the supply and log it.", "any"),
-    Task("live_again", "After the work, live: read {test} at {place}.", "live"),
+    Task("live_again", "After the work, live: {what}", "live"),
     Task("hand_over", "Hand over: document, labels, defects told; then log it.", "live"),
 )
 """The work and what follows it, in order."""

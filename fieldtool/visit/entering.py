@@ -128,7 +128,8 @@ class Entering(OpenJob):
             by=self.by if any(person.id == self.by for person in self.job.people) else None,
             at=now,
             doubt=remark.sentence if remark is not None and remark.doubt else "",
-            needs_taken=circuit is not None and needs_taken(self.job, circuit, test, point, now),
+            needs_taken=circuit is not None
+            and needs_taken(self.job, circuit, test, point, self.now(), probes or "front"),
             replaces=before.id if before is not None else None,
             **values,
         )

@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+import time
 from collections.abc import Callable, Sequence
-from datetime import UTC, datetime
+from datetime import UTC, datetime, timedelta
 from pathlib import Path
 from typing import Any, Self, cast
 
@@ -34,10 +35,19 @@ def _now() -> datetime:
     return datetime.now(UTC)
 
 
+def _running_s() -> float:
+    """Seconds of a clock that nobody sets, counting on while the machine sleeps where the platform can tell [s]."""
+    if hasattr(time, "CLOCK_BOOTTIME"):
+        return time.clock_gettime(time.CLOCK_BOOTTIME)
+    return time.monotonic()
+
+
 class OpenJob:
     """A job with its file and its clock; every accepted change is on the disk before the call returns."""
 
-    def __init__(self, file: JobFile, *, clock: Clock = _now, by: str = "") -> None:
+    def __init__(
+        self, file: JobFile, *, clock: Clock = _now, by: str = "", running_s: Callable[[], float] = _running_s
+    ) -> None:
         self.file = file
         self.job: Job = file.job
         self.clock = clock
@@ -47,6 +57,17 @@ class OpenJob:
         self.notes: tuple[str, ...] = file.notes
         self._memo: dict[tuple[Any, ...], Any] = {}
         self._last_log_tick: float | None = None
+        self.running_s = running_s
+        self._begun = (clock(), running_s())
+
+    def now(self) -> datetime:
+        """The moment that a proof is held against: the later of the wall clock and of one that nobody sets.
+
+        A wall clock that stands before the last entry of the log is given as it is: then nothing is proved.
+        """
+        wall, (begun, ticks) = self.clock(), self._begun
+        latest = max((entry.at for entry in self.job.isolation), default=wall)
+        return wall if wall < latest else max(wall, begun + timedelta(seconds=self.running_s() - ticks))
 
     # opening ------------------------------------------------------------------------------------------------
     @classmethod

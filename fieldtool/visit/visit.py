@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import time
 from collections.abc import Callable, Sequence
 from datetime import datetime
 from typing import Any, cast
@@ -105,6 +104,13 @@ class Visit(Entering):
         found = self.answer(request_id)
         return found.verdict if found is not None else None
 
+    def repeat_tests(self, request_id: str) -> tuple[str, ...]:
+        """The tests that the chosen way calls for after the work; empty while the ways are not worked out."""
+        if not self.has_ways(request_id) or not self.asks(request_id):
+            return ()
+        found = self.answer(request_id)
+        return found.repeat_tests if found is not None else ()
+
     def request_of(self, circuit_id: str) -> str | None:
         """The newest request on a circuit; None where there is none."""
         mine = [request.id for request in self.job.requests if request.circuit == circuit_id]
@@ -175,19 +181,19 @@ class Visit(Entering):
         """The state plate and the reminders, for the strip."""
         from fieldtool.safety.strip import strip
 
-        return strip(self.job, circuit_id, self.clock())
+        return strip(self.job, circuit_id, self.now())
 
     def next_change(self) -> datetime | None:
         """When the strip changes by itself: a warning or a lapse."""
         from fieldtool.safety.states import next_change
 
-        return next_change(self.job, self.clock())
+        return next_change(self.job, self.now())
 
     def log_steps(self, circuit_id: str, place: str = "board") -> tuple[Any, ...]:
         """The steps of the isolation log for one circuit at one place."""
         from fieldtool.safety.log import steps
 
-        return steps(self.job, circuit_id, self.clock(), place=place)
+        return steps(self.job, circuit_id, self.now(), place=place)
 
     def log(
         self,
@@ -205,7 +211,7 @@ class Visit(Entering):
         from fieldtool.safety.log import Refused, accept
 
         self.job, (row_id,) = new_ids(self.job, ["i"])
-        tick = time.monotonic()
+        tick = self.running_s()
         answer = accept(
             self.job,
             kind,
@@ -247,7 +253,7 @@ class Visit(Entering):
         """Log something parted from its terminals, or joined for a test."""
         from fieldtool.safety.parting import may_part
 
-        refused = may_part(self.job, circuit_id, what, cast(Any, sort), self.clock())
+        refused = may_part(self.job, circuit_id, what, cast(Any, sort), self.now(), place)
         if refused:
             return refused
         from fieldtool.job.isolation import Parted
@@ -274,7 +280,7 @@ class Visit(Entering):
         for what, conductor in things:
             if what in known:
                 continue
-            refused = may_part(self.job, circuit_id, what, "parted", self.clock())
+            refused = may_part(self.job, circuit_id, what, "parted", self.now(), place)
             if refused:
                 return refused
             self.job, (row_id,) = new_ids(self.job, ["x"])

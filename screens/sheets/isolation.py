@@ -65,6 +65,10 @@ class Isolation(Sheet):
             if self.asking is not None and item.kind == self.asking.kind and item.asks == "volts":
                 out.extend(self._volts())
         rows = outstanding(visit.job, self.bench.circuit)
+        fast = sum(entry.too_fast and entry.circuit == self.bench.circuit for entry in visit.job.isolation)
+        if fast:
+            said = f"  ??  {fast} step{'s' if fast > 1 else ''} logged faster than hands: flagged on the record."
+            out.append(Line(Text(said, style=palette.unk)))
         if rows:
             out.append(Line(Text("")))
             out += [Line(Text(f"  still {row.sort}: {plain(row.what)}", style=palette.no)) for row in rows]

@@ -41,11 +41,11 @@ class PartedSheet(Sheet):
         if not {key for _, key in wanted} <= parted:
             what = "legs A and B of L, N and E" if ring else "line and neutral of the circuit"
             out.append((f"parted and marked: {what}", lambda: self._part(wanted)))
-        joins = (
+        crossed = (
             ("L of A to N of B, L of B to N of A", "L to N crossed"),
             ("L of A to E of B, L of B to E of A", "L to E crossed"),
         )
-        for what, words in joins if ring else (("line to earth", "line to earth, one link"),):
+        for what, words in (*(crossed if ring else ()), ("line to earth", "line to earth, one link")):
             if not any(row.sort == "joined" for row in rows):
                 out.append((f"joined: {words}", lambda what=what: visit.part(circuit, what, "joined", "link")))  # type: ignore[misc]
         for kind, words in (
