@@ -15,7 +15,7 @@ from fieldtool.job.kinds import TESTS, words
 if TYPE_CHECKING:
     from fieldtool.rules.facts import Facts
 
-__all__ = ["asked", "missing_for", "missing_test"]
+__all__ = ["asked", "missing_for", "missing_test", "places_joined"]
 
 _SURVEY_ORDER = ("site", "supply", "board", "circuit", "device", "rcd", "install", "route", "outlets", "request")
 
@@ -100,9 +100,15 @@ def asked(owner: Any, field: str) -> str:
     return str(label) if label else words(field)
 
 
-def _attach(facts: Facts) -> tuple[str, ...]:
-    edit = facts.edit
-    return tuple(place for place in (edit.attach if edit is not None else ()) if place in facts.found.layout.nodes)
+def places_joined(facts: Facts) -> tuple[str, ...]:
+    """The existing points that new cable joins; from the board, the point of the circuit furthest by resistance."""
+    edit, nodes = facts.edit, facts.found.layout.nodes
+    if edit is None:
+        return ()
+    joined = tuple(place for place in edit.attach if place in nodes)
+    if joined or edit.own_circuit or not nodes:
+        return joined
+    return (max(nodes, key=lambda place: facts.base_r.get(place, 0.0)),)
 
 
 def _end(facts: Facts) -> tuple[str, ...]:
@@ -114,4 +120,4 @@ def _every(facts: Facts) -> tuple[str, ...]:
     return facts.found.layout.nodes
 
 
-_PLACES: dict[str, Callable[[Facts], tuple[str, ...]]] = {"attach": _attach, "end": _end, "every": _every}
+_PLACES: dict[str, Callable[[Facts], tuple[str, ...]]] = {"attach": places_joined, "end": _end, "every": _every}

@@ -9,6 +9,7 @@ from fieldtool.network.layout import BOARD
 from fieldtool.reference.look import constant, terminals_take
 from fieldtool.rules.engine import rule
 from fieldtool.rules.facts import Facts
+from fieldtool.rules.needs import places_joined
 from fieldtool.rules.say import breaks, holds, on_condition
 
 
@@ -215,21 +216,16 @@ def link_left_in(facts: Facts) -> Iterable[Finding]:
     "643.1",
     "A place of attachment that was read, dead and live, before it is added to.",
     applies=lambda facts: (
-        facts.edit is not None
-        and facts.edit.role not in ("none", "new_circuit")
-        and any(place in facts.found.layout.nodes for place in facts.edit.attach)
+        facts.edit is not None and facts.edit.role not in ("none", "new_circuit") and bool(places_joined(facts))
     ),
     needs=("read.zs@attach",),
 )
 def attachment_measured(facts: Facts) -> Iterable[Finding]:
-    """Zs at every place the new cable joins (and at a radial's end)."""
-    edit = facts.edit
-    assert edit is not None
-    for place in edit.attach:
-        if place in facts.found.layout.nodes:
-            reading = facts.read("zs", place)
-            shown = f"{reading.value:.2f} Ω" if reading.value is not None else "open"
-            yield holds(place, f"Zs read at {facts.name(place)}: {shown}.", origin="measured")
+    """Zs at every place the new cable joins; for cable from the board, at the circuit's furthest point."""
+    for place in places_joined(facts):
+        reading = facts.read("zs", place)
+        shown = f"{reading.value:.2f} Ω" if reading.value is not None else "open"
+        yield holds(place, f"Zs read at {facts.name(place)}: {shown}.", origin="measured")
 
 
 @rule(

@@ -8,6 +8,7 @@ import pytest
 
 from fieldtool.answers import WayAnswer
 from fieldtool.job.job import Job
+from fieldtool.job.kinds import TESTS
 from fieldtool.verdict.compare import compare
 from tests.jobs import Facts, ask_for, drop_readings, outlet, row, sample
 
@@ -132,6 +133,48 @@ def heavy_load(body: Facts) -> None:
 
 def box_of_a_twin(body: Facts) -> None:
     row(body, "points", "p2")["kind"] = "twin"
+
+
+RING_SET = ("ze", "pfc", "polarity", "ir_ln", "r1", "rn", "r2", "ln_cross", "le_cross", "zs", "rcd_ms")
+RADIAL_SET = ("ze", "pfc", "polarity", "ir_ln", "legs", "r1_r2", "zs", "rcd_ms")
+NEEDED: dict[str, tuple[str, ...]] = {
+    **dict.fromkeys(("spur_at_point", "spur_at_joint_box", "spur_at_board", "fused_spur", "fixed_appliance",
+                     "beyond_fcu", "ring_between", "ring_at_point", "heavy_branch", "outlet_moved", "single_to_twin"),
+                    RING_SET),
+    # The device is changed, so the old one's trip time says nothing of the new.
+    "ring_to_radial": RING_SET[:-1],
+    "ring_to_two": RING_SET[:-1],
+    "radial_end": RADIAL_SET,
+    "radial_branch": RADIAL_SET,
+    "second_leg": RADIAL_SET,
+    "new_circuit": ("ze", "pfc"),
+}  # fmt: skip
+"""Readings without which no way may go; common practice of supervisors, after BS 7671 132.16 and 643."""
+
+
+@pytest.mark.parametrize("way, test", [(way, test) for way, tests in NEEDED.items() for test in tests])
+def test_no_way_goes_without_the_readings_that_it_needs(way: str, test: str) -> None:
+    """Each reading taken out of a case in which the way serves: the verdict waits for it, and names it."""
+    name, edits = next((case[1], case[2]) for case in SERVES if case[0] == way)
+    found = answer(sample(name, *edits, lambda body: drop_readings(body, test)), way)
+    assert found.outcome == "more"
+    assert found.verdict is not None
+    assert test in {gap.test for gap in found.verdict.missing}
+
+
+def test_what_is_missing_is_asked_for_in_the_order_it_is_taken() -> None:
+    """Survey, then dead tests, then live ones: 643.1's order within a visit."""
+
+    def nothing_read(body: Facts) -> None:
+        body["readings"] = []
+        row(body, "circuits", "c3").pop("heat_seen", None)
+
+    found = answer(sample("larch_row", spur_twin, nothing_read), "spur_at_point")
+    assert found.verdict is not None
+    asked = [gap.test for gap in found.verdict.missing]
+    states = ["survey" if test == "survey" else TESTS[test].state for test in asked]
+    assert states == sorted(states, key=("survey", "origin", "dead", "live").index)
+    assert {"r1", "ln_cross", "zs"} <= set(asked)
 
 
 REFUSED: list[tuple[str, str, list[Any], str]] = [
