@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING, Any
 from textual.app import App
 from textual.screen import Screen
 
+from fieldtool.mishap import keep
 from screens.base import Pane, Sheet
 from screens.theme import PALETTES, Palette, default_theme, textual_theme
 from screens.workbench import Workbench
@@ -46,6 +47,8 @@ class FieldApp(App[None]):
 
     ENABLE_COMMAND_PALETTE = False
     TITLE = "fieldtool"
+    strict = False
+    """True in tests: an unforeseen error fails the test instead of being kept for later."""
     CSS = "Screen { background: $background; }"
 
     def __init__(self, visit: Visit | None = None, *, clock: Callable[[], datetime] | None = None) -> None:
@@ -121,8 +124,21 @@ class FieldApp(App[None]):
             self.bench.refresh_all()
 
     def note_problem(self, problem: Exception) -> None:
-        """Keep the details of something unexpected, for the last page of the help."""
+        """Keep the details of something unexpected, for the last page of the help and for the log."""
+        if self.strict:
+            raise problem
         self.problem = "".join(traceback.format_exception(problem))[-2000:]
+        keep(problem)
+
+    def _handle_exception(self, error: Exception) -> None:
+        """The framework's end of an error that nothing caught: one sentence and the log, not a traceback."""
+        if self.strict:
+            super()._handle_exception(error)
+            return
+        kept = keep(error)
+        where = f" Details: {kept}" if kept is not None else ""
+        said = f"fieldtool had to stop: an error in the tool itself. What was accepted is saved; start again.{where}"
+        self.exit(return_code=1, message=said)
 
     def leave(self) -> None:
         """Leave; with something parted, joined or off, say so first."""

@@ -143,6 +143,13 @@ class Pane(Widget, can_focus=False):
     # drawing -------------------------------------------------------------------------------------------------
     def render(self) -> Text:
         """The visible lines, the current one always among them."""
+        try:
+            return self._rendered()
+        except Exception as problem:
+            self.bench.field.note_problem(problem)
+            return Text(" This page cannot be shown now. What you entered is kept. Esc: menu; details: F1.")
+
+    def _rendered(self) -> Text:
         self.cursor = max(0, min(self.cursor, max(0, self.count() - 1)))
         every = self.lines()
         height = max(1, self.size.height)
@@ -178,6 +185,9 @@ class Pane(Widget, can_focus=False):
 
     def on_click(self, event: events.Click) -> None:
         """A touch on a line selects what is there."""
+        self.bench.guarded(lambda: self._touched(event))
+
+    def _touched(self, event: events.Click) -> None:
         self.bench.touched()
         if 0 <= event.y < len(self._drawn):
             line = self._drawn[event.y]

@@ -28,6 +28,8 @@ if TYPE_CHECKING:
 
 __all__ = ["Row", "Workbench"]
 
+_MISHAP = "That did not work and nothing changed. Try again; details: F1."
+
 
 class Row(Widget, can_focus=False):
     """One row of text that another part writes."""
@@ -244,7 +246,7 @@ class Workbench(Screen[None]):
             taken, said = self.front.target().commit(typed)
         except Exception as problem:
             self.field.note_problem(problem)
-            return False, "That did not work and nothing changed. Try again; details: F1."
+            return False, _MISHAP
         self.next_why = ""
         self.judge()
         self.refresh_all()
@@ -265,18 +267,29 @@ class Workbench(Screen[None]):
     def _pane_digit(self, character: str) -> bool:
         for action in self.front.actions():
             if action.key == character:
-                action.do()
+                self.guarded(action.do)
                 self.refresh_all()
                 return True
         return False
 
+    def guarded(self, do: Callable[[], object]) -> None:
+        """Do something; an error that nobody foresaw becomes a sentence, and the screen goes on."""
+        try:
+            do()
+        except Exception as problem:
+            self.field.note_problem(problem)
+            self.say(_MISHAP)
+
     def special(self, character: str) -> None:
         """``+ - /`` in a place where they are keys."""
-        {"+": self.front.skip, "-": self.front.back, "/": self.front.next_missing}[character]()
+        self.guarded({"+": self.front.skip, "-": self.front.back, "/": self.front.next_missing}[character])
         self.refresh_all()
 
     def pad_key(self, meaning: str) -> None:
         """A key of the pad on the screen."""
+        self.guarded(lambda: self._pad_key(meaning))
+
+    def _pad_key(self, meaning: str) -> None:
         if meaning == "enter":
             self.entry.commit()
         elif meaning == "backspace":
@@ -337,7 +350,7 @@ class Workbench(Screen[None]):
             if self.visit is None and event.key in ("f2", "f3", "f4", "f5", "f7", "f9", "ctrl+z", "ctrl+y"):
                 self.say("Choose a job first, or 7 for a new one.")
                 return
-            moves[event.key]()
+            self.guarded(moves[event.key])
             self.entry.focus()
 
     def do_f6(self) -> None:
@@ -361,9 +374,13 @@ class Workbench(Screen[None]):
         self.open_named("help")
 
     def open_named(self, name: str) -> None:
-        """Open a sheet by its name; the same again closes it."""
+        """Open a sheet by its name; the same again closes it; one that lies under others comes to the front."""
         if self.front.key == name:
             self.close_sheet()
+            return
+        if any(pane.key == name for pane, _, _ in self.under):
+            while self.front.key != name:
+                self.close_sheet()
             return
         self.open_sheet(self.field.sheet(name, self))
 
@@ -384,6 +401,9 @@ class Workbench(Screen[None]):
     # painting ------------------------------------------------------------------------------------------------
     def tick(self) -> None:
         """The clock moves: the strip may change by itself, a save may work now, a writer may have written."""
+        self.guarded(self._tick)
+
+    def _tick(self) -> None:
         if self.visit is not None:
             if self.visit.save_problem and self.visit.retry_save():
                 self.say("Saved again.")

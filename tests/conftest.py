@@ -23,6 +23,7 @@ def _home_of_its_own(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setenv("FIELDTOOL_JOBS", str(tmp_path / "jobs"))
     monkeypatch.setenv("HOME", str(tmp_path))
     monkeypatch.delenv("NO_COLOR", raising=False)
+    monkeypatch.setattr("screens.app.FieldApp.strict", True)
 
 
 def pytest_terminal_summary(terminalreporter: pytest.TerminalReporter) -> None:

@@ -91,7 +91,7 @@ def main_switch_first(job: Job, circuit_id: str) -> NextStep:
     """Nothing is parted or joined at the board before the main switch is off and locked."""
     name = shorten(job.circuit(circuit_id).name or circuit_id, NAME_CELLS)
     return step_of(
-        f"Main switch off and locked before legs of {name} are parted: F9.",
+        f"Main switch off, locked, before {name} is parted: F9 +.",
         "A borrowed neutral rises to mains when it is lifted. Incoming terminals stay live.",
         "main_switch_off",
         circuit=circuit_id,
@@ -115,7 +115,7 @@ def arranged_first(
     wrong = [row for row in joined if row.what not in wanted]
     if wrong and (test in _NOTHING_JOINED or test.startswith("ir_") or wanted):
         why = "A join reads as a fault here." if test.startswith("ir_") else "This is read with that join off."
-        return step_of(f"Take the join off first: {wrong[0].what}.", why, "put_back")
+        return step_of(f"Take the join off: {wrong[0].what}: F9 +.", why, "put_back")
     parted = {row.conductor for row in rows if row.sort == "parted"}
     part = table[0]
     tests = _RING_PARTED if table is RING else _RADIAL_PARTED
@@ -141,7 +141,7 @@ def put_back(job: Job, circuit_id: str) -> NextStep:
     whose = "" if mine else f" of {shorten(job.circuit(rows[0].circuit).name or rows[0].circuit, NAME_CELLS)}"
     if rows[0].sort == "joined":
         return step_of(
-            f"At the board: take off {rows[0].what}{whose}; check it open, say so.",
+            f"Take off {rows[0].what}{whose}; check it open: F9 +.",
             "A join left on is a short circuit when the supply comes back.",
             "put_back",
             circuit=rows[0].circuit,
@@ -150,7 +150,7 @@ def put_back(job: Job, circuit_id: str) -> NextStep:
     letters = " ".join(letter for letter, key in (("L", "line"), ("N", "neutral"), ("E", "cpc")) if key in parted)
     what = f"put legs {letters}{whose} back in the way" if letters else f"put back {rows[0].what}{whose}"
     return step_of(
-        f"At the board: {what}, then say so.",
+        f"At the board: {what}, then say so: F9 +.",
         "An earth parted and not put back passes every dead ring test.",
         "put_back",
         circuit=rows[0].circuit,

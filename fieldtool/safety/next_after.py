@@ -66,7 +66,7 @@ def abandoned_step(job: Job, circuit_id: str) -> NextStep:
     if any(entry.kind == "abandoned" and entry.circuit == circuit_id for entry in job.isolation):
         return step_of("Left as logged: insulated, closed, locked, told.", "Abandoned on the record.", "done")
     return step_of(
-        "Insulate dead ends, close, lock, tell in writing; log it: F9.",
+        "Insulate dead ends, close, lock, tell in writing; log it: F9 +.",
         "Leaving it in a known state is a finish too.",
         "abandoned",
         circuit=circuit_id,

@@ -130,7 +130,7 @@ def _earth_off(found: CircuitState, verdict: Verdict | None) -> NextStep | None:
     if first is not None and first.test in _AT_ORIGIN:
         return None
     return step_of(
-        "Earth back on its terminal, tight; log the origin test over: F9.",
+        "Earth back on its terminal, tight; log the test over: F9 +.",
         "While the earthing conductor is off, every exposed part of the building has no earth.",
         "origin_test_ends",
     )
@@ -206,7 +206,7 @@ def _live(
     if found.word != "live":
         name = shorten(job.circuit(circuit_id).name or circuit_id, NAME_CELLS)
         return step_of(
-            f"Covers on, {name} on; log it restored (F9). Then live tests.",
+            f"Covers on, {name} on; log it restored: F9 +.",
             "Live tests are taken with covers on and everything back in its place.",
             "restored",
             circuit=circuit_id,

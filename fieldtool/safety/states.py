@@ -124,7 +124,14 @@ def both_poles_needed(job: Job, circuit_id: str) -> str:
             low = reading.value is not None and reading.value < 1e6 and reading.sign != ">"
             if (reading.test == "ir_neutrals" and low) or (reading.test == "legs" and reading.answer == "wrong"):
                 return "Its neutral or a leg meets another circuit: the whole board goes off."
+    taken = {cell[2] for cell in job.counted() if cell[0] == circuit_id and cell[3] == "as_found"}
+    if not _READ_PARTED["radial" if circuit.label_claims == "radial" else "ring"] <= taken:
+        return "Its ends are still to be parted and read at the board: the whole board goes off."
     return ""
+
+
+_READ_PARTED = {"ring": {"r1", "rn", "r2"}, "radial": {"legs"}}
+"""Tests that are read with conductors parted at the board, which takes the whole board off."""
 
 
 def blocked_by(job: Job, circuit_id: str) -> str:

@@ -363,7 +363,7 @@ def test_two_ways_a_borrowed_neutral_tt_and_a_battery_stop_short_of_proved_dead(
     edit: Any, first: str, said: str
 ) -> None:
     """The steps that would do for a plain circuit do not do here: the log stops and says what comes first."""
-    job, now = sample("larch_row", edit, lambda body: drop_readings(body, "r2")), NOW
+    job, now = sample("larch_row", edit, lambda body: drop_readings(body, "le_cross")), NOW
     plain = [kind for kind in sequence(sample(), C) if kind not in ("main_switch_off", "sources_isolated")]
     stopped = ""
     for kind in plain:

@@ -190,7 +190,7 @@ async def test_a_lapse_while_a_sheet_is_open_repaints_and_keeps_what_is_half_typ
             visit._last_log_tick = None
         bench.paint_strip()
         assert bench.strip.view is not None
-        assert bench.strip.view.state == "proved_dead"
+        assert bench.strip.view.state == "board_dead"
         typed(app, "0.2")
         await pilot.pause(0.1)
         bench.open_named("help")
@@ -289,6 +289,50 @@ async def test_markup_in_names_is_shown_as_it_was_typed(tmp_path: Path) -> None:
         await settled(pilot, app)
         assert app.bench is not None
         assert "[red]door" in app.bench.front.render().plain  # type: ignore[union-attr]
+
+
+async def test_every_sheet_opens_over_every_other_and_closes_again(tmp_path: Path) -> None:
+    app = app_on(tmp_path)
+    async with app.run_test(size=(80, 24)) as pilot:
+        await settled(pilot, app)
+        bench = app.bench
+        assert bench is not None
+        for first in SHEETS:
+            for second in SHEETS:
+                for third in ("isolation", "map"):
+                    for name in (first, second, third):
+                        bench.open_named(name)
+                        await pilot.pause()
+                    bench.close_sheets()
+                    await pilot.pause()
+                    assert bench.front.key in PANES
+
+
+async def test_an_error_nobody_foresaw_is_a_sentence_and_the_app_goes_on(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(FieldApp, "strict", False)
+    app = app_on(tmp_path)
+    async with app.run_test(size=(80, 24)) as pilot:
+        await settled(pilot, app)
+        bench = app.bench
+        assert bench is not None
+
+        def broken(*_: object) -> None:
+            raise RuntimeError("nobody foresaw this")
+
+        for part in ("skip", "do_f6", "next_missing", "lines"):
+            with pytest.MonkeyPatch.context() as patch:
+                patch.setattr(bench.front, part, broken)
+                await pilot.press({"skip": "plus", "do_f6": "f6", "next_missing": "slash", "lines": "down"}[part])
+                await pilot.pause(0.05)
+                shown = bench.entry.said + str(bench.front.render())
+                assert "did not work" in shown or "cannot be shown" in shown
+            bench.entry.said = ""
+        await pilot.press("down")
+        await pilot.pause(0.05)
+        assert "Zs" in str(bench.front.render())
+        assert "nobody foresaw this" in (next(tmp_path.rglob("mishaps.log"))).read_text()
 
 
 async def test_resizing_in_the_middle_of_an_entry_keeps_it(tmp_path: Path) -> None:
