@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterator, Mapping
 
 from fieldtool.record.blocks import Block, Grid, Words
@@ -10,6 +11,11 @@ from fieldtool.reference.look import Figure
 from fieldtool.reference.used import Asked
 
 __all__ = ["provenance"]
+
+_CODES = re.compile(r"\s*\(?\bS\d+(?:(?:, | to )S\d+)*\)?")
+"""Short codes of the sources' own list, which the record does not carry."""
+
+_UNITS = ("a", "ma", "v", "w", "c", "m", "m2", "mm", "mm2", "ohm", "mohm", "s", "ms")
 
 _NAMES = {
     "r_ohm_per_m": "copper conductor {0:g} mm², per metre",
@@ -25,7 +31,7 @@ _NAMES = {
     "rcd_most_ms": "longest RCD trip time, {0}",
     "terminals_take": "conductors of {0:g} mm² in a terminal",
     "disconnection_s": "disconnection time, {0}",
-    "usual_ze": "Ze usual, {0}",
+    "usual_ze": "Ze usual, and above which it is questioned, {0}",
 }
 
 
@@ -51,12 +57,21 @@ def provenance(used: Mapping[Asked, object]) -> Iterator[Block]:
 
 def _row(said: str, figure: Figure) -> tuple[str, ...]:
     made = figure.provenance
-    return (said, amount(figure.value, figure.unit), f"{made.table}, {made.standard}", made.sure, made.note)
+    note = _CODES.sub("", made.note).strip(" ;,.") or "–"
+    return (
+        said,
+        amount(figure.value, figure.unit),
+        f"{made.table}, {made.standard}",
+        made.sure.replace("+", ", "),
+        note,
+    )
 
 
 def _said(name: str, given: tuple[object, ...], figure: Figure) -> str:
     if name == "constant":
-        return str(given[0]).replace(".", ": ", 1).replace("_", " ")
+        group, _, name = str(given[0]).partition(".")
+        parts = name.split("_")
+        return f"{group}: {' '.join(parts[:-1] if len(parts) > 1 and parts[-1] in _UNITS else parts)}"
     if name == "zs_max_ohm":
         return f"largest loop for {device_words(str(given[0]), float(str(given[1])))}"
     if name == "disconnection_s":

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from math import floor, isfinite
 
 from fieldtool.answers import VERDICT_WORDS, CircuitReading, Finding, Verdict, WayAnswer
 from fieldtool.job.job import Job
@@ -34,10 +35,9 @@ def reading_says(job: Job, reading: CircuitReading, circuit_id: str) -> Iterator
         yield Words(f"{_ODDS[item.odds]}: {item.sentence}")
         lines = list(item.reasoning)
         for one in item.inferred:
-            band = f"between {amount(one.low, one.unit)} and {amount(one.high, one.unit)}"
-            lines.append(
-                f"{words(one.what)} at {place(job, one.place, circuit_id)}: {amount(one.value, one.unit)}, {band}"
-            )
+            band = f"between {_rough(one.low, one.unit)} and {_rough(one.high, one.unit)}"
+            what = words(one.what.removesuffix(f"_{one.unit}"))
+            lines.append(f"{what} at {place(job, one.place, circuit_id)}: about {_rough(one.value, one.unit)}, {band}")
         if lines:
             yield Points(tuple(lines))
     if reading.settle is not None:
@@ -46,6 +46,14 @@ def reading_says(job: Job, reading: CircuitReading, circuit_id: str) -> Iterator
         yield Words(
             f"The smallest spur these readings can show: {amount(round(reading.smallest_spur_m, 1), 'm')}.", "small"
         )
+
+
+def _rough(value: float | None, unit: str) -> str:
+    """A value that was inferred or is left over: no finer than it can be known, rounded down."""
+    if value is None or not isfinite(value):
+        return amount(value, unit)
+    step = {"m": 10, "ohm": 100, "V": 10, "A": 10}.get(unit, 1000)
+    return amount(floor(value * step + 1e-9) / step, unit)
 
 
 def asked_for(job: Job, request: Request) -> Iterator[Block]:
@@ -129,7 +137,7 @@ def verdict_reached(job: Job, proposal: Proposal) -> Iterator[Block]:
                 place(job, room.place, proposal.request.circuit),
                 f"{room.metres:g} m" if room.metres is not None else room.why,
                 f"{room.metres_clear:g} m" if room.metres_clear is not None else "–",
-                amount(room.spare, room.unit),
+                _rough(room.spare, room.unit),
             )
             for room in rooms
         )

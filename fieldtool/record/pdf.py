@@ -11,7 +11,7 @@ from datetime import datetime
 from importlib.resources import as_file, files
 
 from fpdf import FPDF
-from fpdf.enums import Align, MethodReturnValue, WrapMode, XPos, YPos
+from fpdf.enums import Align, MethodReturnValue, PageOrientation, WrapMode, XPos, YPos
 
 from fieldtool.quantities.show import plain
 from fieldtool.record.blocks import Block, Grid, Picture, Points, Record, Section, Words
@@ -24,6 +24,9 @@ _SIDE, _TOP, _FOOT = 15.0, 14.0, 18.0
 _TEXT, _SMALL, _CELL = 9.5, 8.0, 7.6
 _LEAD = 0.46
 """Line height [mm] for each point of type size."""
+
+_LEAST_TYPE_MM = 2.2
+"""Type in a drawing smaller than this turns its page on its side [mm]."""
 
 
 class _Paper(FPDF):
@@ -101,7 +104,10 @@ def as_pdf(record: Record, now: datetime) -> bytes:
 
 
 def _section(paper: _Paper, section: Section) -> None:
-    if section.own_page or paper.left() < 30:
+    first = section.blocks[0] if section.blocks else Words("")
+    if isinstance(first, Picture) and _scale(paper, first, upright=True) * first.text_high < _LEAST_TYPE_MM:
+        paper.add_page(orientation="L")
+    elif section.own_page or paper.left() < max(30, _first_needs(paper, first)):
         paper.add_page()
     paper.ln(3)
     paper.text_block(section.title, 12, bold=True)
@@ -111,6 +117,13 @@ def _section(paper: _Paper, section: Section) -> None:
     paper.set_y(y + 1.4)
     for block in section.blocks:
         _block(paper, block)
+    if paper.cur_orientation == PageOrientation.LANDSCAPE:
+        paper.add_page()
+
+
+def _first_needs(paper: _Paper, block: Block) -> float:
+    """What a section's heading and its first block take together at least [mm]; a heading never stands alone."""
+    return block.high * _scale(paper, block) + 18 if isinstance(block, Picture) else 30.0
 
 
 def _block(paper: _Paper, block: Block) -> None:
@@ -208,16 +221,15 @@ def _drawn(paper: _Paper, cells: Sequence[Sequence[str]], wide: Sequence[float],
         x += column
     low = top + max(len(lines) for lines in cells) * high + 1.0
     paper.set_line_width(0.3 if bold else 0.1)
+    paper.set_draw_color(0 if bold else 150)
     paper.line(paper.l_margin, low, paper.w - paper.r_margin, low)
+    paper.set_draw_color(0)
     paper.set_xy(paper.l_margin, low)
 
 
 def _picture(paper: _Paper, picture: Picture) -> None:
     """The drawing as vectors, as large as the page's width and a readable type allow."""
-    most = paper.h - paper.t_margin - paper.b_margin - 20
-    scale = min(paper.epw / picture.wide, most / picture.high, 2.0)
-    if paper.left() < picture.high * scale + 4:
-        paper.add_page()
+    scale = _scale(paper, picture)
     x0, y0 = paper.l_margin, paper.get_y() + 1
     size = picture.text_high * scale * 72 / 25.4
     paper.set_font(_FACE, "", size)
@@ -237,3 +249,10 @@ def _picture(paper: _Paper, picture: Picture) -> None:
     for label in picture.labels:
         paper.text(x0 + label.x * scale, y0 + label.y * scale, paper.shown(label.text))
     paper.set_xy(paper.l_margin, y0 + picture.high * scale + 2)
+
+
+def _scale(paper: _Paper, picture: Picture, *, upright: bool = False) -> float:
+    """Millimetres for one picture unit, so that the drawing fits below a heading on this page, or on an upright one."""
+    wide, high = (210.0, 297.0) if upright else (paper.w, paper.h)
+    most = high - _TOP - _FOOT - 32
+    return float(min((wide - 2 * _SIDE) / picture.wide, most / picture.high, 1.9))

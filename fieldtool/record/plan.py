@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import dataclass
 
 from fieldtool.job.job import Job
 from fieldtool.job.kinds import words
@@ -13,10 +14,21 @@ from fieldtool.record.page_map import Spot, draw
 __all__ = ["plan"]
 
 _LETTER = {"twin": "2", "single": "1", "fcu": "F", "appliance": "A", "joint": "J", "blank": "–"}
-_ROW = 2.4
-_PITCH = 15
-_BOARD_WIDE = 6.0
-_TEXT = 1.7
+_COLUMN, _ROW, _TEXT = 1.2, 3.2, 1.7
+"""Picture units for one cell and one row of the screen's map, and the height of type."""
+_BOX_WIDE, _BOX_HIGH, _BOARD_WIDE = 3.2, 2.1, 6.2
+_CELL_WIDE = 0.85
+"""About how wide one character is set [picture units]."""
+
+
+@dataclass(frozen=True, slots=True)
+class _Hung:
+    """A point as it is drawn: its letter, its name, what it hangs on, whether it is only proposed."""
+
+    letter: str
+    name: str
+    parent: str
+    new: bool
 
 
 class _Pen:
@@ -28,12 +40,12 @@ class _Pen:
     def stroke(self, x1: float, y1: float, x2: float, y2: float, *, dashed: bool = False) -> None:
         self.strokes.append(Stroke(x1, y1, x2, y2, dashed))
 
-    def box(self, x: float, row_y: float, text: str, *, dashed: bool = False) -> None:
-        self.boxes.append(Box(x, row_y - 1.0, 3.0, 2.0, text, dashed))
+    def box(self, x: float, y: float, text: str, *, wide: float = _BOX_WIDE, dashed: bool = False) -> None:
+        self.boxes.append(Box(x, y - _BOX_HIGH / 2, wide, _BOX_HIGH, text, dashed))
 
-    def label(self, x: float, row_y: float, text: str) -> None:
+    def label(self, x: float, y: float, text: str) -> None:
         if text:
-            self.labels.append(Label(x, row_y + 0.6, text))
+            self.labels.append(Label(x, y, text))
 
 
 def plan(job: Job, circuit_id: str, *, ring: bool, values: Mapping[str, str]) -> Picture | None:
@@ -41,85 +53,82 @@ def plan(job: Job, circuit_id: str, *, ring: bool, values: Mapping[str, str]) ->
 
     ``values`` is a short text under each point's name. KeyError for an unknown circuit.
     """
-    points = {point.id: point for point in job.points_of(circuit_id)}
-    trunk = [point.id for point in points.values() if point.spur_from is None and point.behind is None]
+    every = _every(job, circuit_id)
+    trunk = [point_id for point_id, item in every.items() if not item.parent and not item.new]
     if not trunk:
         return None
     half = (len(trunk) + 1) // 2 if ring else len(trunk)
-    drawing = draw(job, circuit_id, ring=ring, width=12 + max(half, 4) * _PITCH, values=values)
+    pitch = max(6, min(15, 165 // half))
+    drawing = draw(job, circuit_id, ring=ring, width=12 + half * pitch, values=values)
     spots = {spot.point: spot for spot in drawing.spots}
-    base = spots[trunk[0]].row
     pen = _Pen()
-    edge = _trunk(pen, spots, trunk, half, base, ring=ring)
-    parents = {p.id: (p.behind or p.spur_from or "") for p in points.values()}
-    kinds = {p.id: (p.kind, p.name or p.id, False) for p in points.values()}
-    for request, outlet in job.new_outlets():
-        if request.circuit == circuit_id:
-            parents[outlet.id] = request.at or request.swap or ""
-            kinds[outlet.id] = (outlet.kind, outlet.name, True)
+    wide = _trunk(pen, spots, trunk, half, pitch, ring=ring)
     for point_id in trunk:
-        spot = spots[point_id]
-        kind, name, _ = kinds[point_id]
-        pen.box(spot.left, spot.row * _ROW, _LETTER[kind])
-        pen.label(spot.left + 2.2, (spot.row + 1) * _ROW - 0.5, shorten(name, _PITCH - 3))
-        pen.label(spot.left + 2.2, (spot.row + 2) * _ROW - 1.1, values.get(point_id, ""))
-    wide = edge + 2.0
+        x, y = _at(spots[point_id])
+        pen.box(x, y, every[point_id].letter)
+        room = int((pitch * _COLUMN - 2.2) / _CELL_WIDE)
+        pen.label(x + 2.0, y + 2.6, shorten(every[point_id].name, room))
+        pen.label(x + 2.0, y + 4.4, shorten(values.get(point_id, ""), room))
     for point_id in spots:
         if point_id not in trunk:
-            wide = max(wide, _hung(pen, point_id, spots, parents, kinds, trunk, values))
-    return _trimmed(pen, wide, _says(job, circuit_id, ring=ring))
+            wide = max(wide, _hung(pen, point_id, spots, every, values))
+    return _trimmed(pen, wide + 1.0, _says(job, circuit_id, ring=ring))
 
 
-def _trunk(pen: _Pen, spots: Mapping[str, Spot], trunk: list[str], half: int, base: int, *, ring: bool) -> float:
+def _every(job: Job, circuit_id: str) -> dict[str, _Hung]:
+    points = job.points_of(circuit_id)
+    out = {p.id: _Hung(_LETTER[p.kind], p.name or p.id, p.behind or p.spur_from or "", False) for p in points}
+    for request, outlet in job.new_outlets():
+        if request.circuit == circuit_id:
+            out[outlet.id] = _Hung(_LETTER[outlet.kind], outlet.name, request.at or request.swap or "", True)
+    return out
+
+
+def _at(spot: Spot) -> tuple[float, float]:
+    return spot.left * _COLUMN, spot.row * _ROW
+
+
+def _trunk(pen: _Pen, spots: Mapping[str, Spot], trunk: list[str], half: int, pitch: int, *, ring: bool) -> float:
     """The board and the cable between the points of the trunk; the right-hand edge of the drawing."""
-    y = base * _ROW
-    last = spots[trunk[half - 1]]
-    edge = last.left + 3.0
+    y = spots[trunk[0]].row * _ROW
+    last, _ = _at(spots[trunk[half - 1]])
+    edge = last + pitch * _COLUMN - 1.5
     if not ring:
-        pen.boxes.append(Box(0.0, y - 1.2, _BOARD_WIDE, 2.4, "board"))
-        pen.stroke(_BOARD_WIDE, y, last.left, y)
-        return float(last.right)
-    low = (base + 4) * _ROW
-    pen.boxes.append(Box(0.0, (base + 2) * _ROW - 1.2, _BOARD_WIDE, 2.4, "board"))
-    edge = max(spot.left for spot in spots.values() if spot.point in trunk) + _PITCH - 1.0
-    middle = _BOARD_WIDE / 2
+        pen.box(0.0, y, "board", wide=_BOARD_WIDE)
+        pen.stroke(_BOARD_WIDE, y, last, y)
+        return edge
+    middle, low, x = y + 2 * _ROW, y + 4 * _ROW, _BOARD_WIDE / 2
     for at, name in ((y, "A"), (low, "B")):
-        pen.stroke(middle, (base + 2) * _ROW, middle, at)
-        pen.stroke(middle, at, edge, at)
-        pen.label(middle - 2.2, at, name)
+        pen.stroke(x, middle, x, at)
+        pen.stroke(x, at, edge, at)
+        pen.label(x - 2.2, at + 0.6, name)
     pen.stroke(edge, y, edge, low)
+    pen.box(0.0, middle, "board", wide=_BOARD_WIDE)
     return edge
 
 
 def _hung(
-    pen: _Pen,
-    point_id: str,
-    spots: Mapping[str, Spot],
-    parents: Mapping[str, str],
-    kinds: Mapping[str, tuple[str, str, bool]],
-    trunk: list[str],
-    values: Mapping[str, str],
+    pen: _Pen, point_id: str, spots: Mapping[str, Spot], every: Mapping[str, _Hung], values: Mapping[str, str]
 ) -> float:
     """One point that hangs on another: a stem from its parent, a tee, a box; where its text ends."""
-    depth, above = 1, parents.get(point_id, "")
-    while above not in trunk and above in parents and depth < 40:
-        depth, above = depth + 1, parents[above]
-    spot, parent = spots[point_id], spots[parents[point_id]]
-    kind, name, new = kinds[point_id]
-    y = spot.row * _ROW
-    left = spot.left + 3.0 * depth
-    stem = left - 1.5
-    away = 1.0 if spot.row > parent.row else -1.0
-    pen.stroke(stem, parent.row * _ROW + away, stem, y, dashed=new)
-    pen.stroke(stem, y, left, y, dashed=new)
-    pen.box(left, y, _LETTER[kind], dashed=new)
-    text = f"{shorten(name, 11)} {values.get(point_id, '')}".strip()
-    pen.label(left + 3.4, y, text)
-    return left + 3.4 + cells(text) * 0.95
+    item, depth, above = every[point_id], 1, every[every[point_id].parent]
+    while above.parent and depth < 40:
+        depth, above = depth + 1, every[above.parent]
+    x, y = _at(spots[point_id])
+    _, start = _at(spots[item.parent])
+    left = x + 3.2 * depth
+    stem = left - _BOX_WIDE / 2
+    pen.stroke(stem, start + (_BOX_HIGH if y > start else -_BOX_HIGH) / 2, stem, y, dashed=item.new)
+    pen.stroke(stem, y, left, y, dashed=item.new)
+    pen.box(left, y, item.letter, dashed=item.new)
+    name, value = shorten(item.name, 12), values.get(point_id, "")
+    pen.label(left + _BOX_WIDE + 0.5, y + (-0.1 if value else 0.6), name)
+    pen.label(left + _BOX_WIDE + 0.5, y + 1.6, value)
+    return left + _BOX_WIDE + 0.5 + max(cells(name), cells(value)) * _CELL_WIDE
 
 
 def _trimmed(pen: _Pen, wide: float, says: str) -> Picture:
-    top = min(min(box.y for box in pen.boxes), min((s.y1 for s in pen.strokes), default=0.0)) - 0.6
+    top = min(box.y for box in pen.boxes) - 0.8
     low = max(max(box.y + box.high for box in pen.boxes), max((label.y for label in pen.labels), default=0.0)) + 0.8
     return Picture(
         wide,

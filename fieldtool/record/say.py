@@ -45,7 +45,10 @@ def amount(value: float | None, unit: str) -> str:
         value, unit = value / 1e6, "Mohm"
     if unit == "A" and abs(value) >= 1000:
         value, unit = value / 1000, "kA"
-    return f"{value:.5g} {unit_sign(unit)}".rstrip()
+    text = (
+        f"{value:.2f}" if unit == "ohm" and 0 < value < 10 and abs(value - round(value, 2)) < 1e-9 else f"{value:.5g}"
+    )
+    return f"{text} {unit_sign(unit)}".rstrip()
 
 
 def moment(at: datetime | None) -> str:

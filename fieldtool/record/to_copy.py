@@ -33,6 +33,7 @@ _AT_POINTS = (
     ("le_cross", "R1+R2 of the ring, legs crossed, highest read"),
     ("zs", "Zs, highest read"),
 )
+_NO_REASON = "not taken; no reason was given yet"
 _RING_ONLY = ("r1", "rn", "r2", "le_cross")
 _MAY_LACK = ("ir_live_e", "function", "le_cross")
 
@@ -68,11 +69,11 @@ def to_copy(job: Job, answers: CircuitAnswers) -> Section:
         if found is not None:
             rows.append((name, value_of(found), origin_words(found), _how(job, found, place=True)))
         elif test not in _MAY_LACK and not (ring and test == "r1_r2"):
-            rows.append((name, "–", "not taken", ""))
+            rows.append((name, "–", "limitation", _NO_REASON))
     rows += _worked_out(job, answers)
     for test, name in _AT_THE_BOARD[3:]:
         row = _reading(job, name, circuit.id, test)
-        if row[2] != "not taken" or not (test in _MAY_LACK or (test.startswith("rcd") and rcd is None)):
+        if row[3] != _NO_REASON or not (test in _MAY_LACK or (test.startswith("rcd") and rcd is None)):
             rows.append(row)
     blocks: tuple[Block, ...] = (
         Words(
@@ -96,8 +97,8 @@ def _reading(job: Job, name: str, circuit_id: str | None, test: str, board: str 
         if (found.circuit, found.point, found.test) == (circuit_id, None, test) and found.origin == "limitation":
             return (name, "–", "limitation", found.why_not)
         if (found.circuit, found.point, found.test) == (circuit_id, None, test):
-            return (name, "–", "not taken", f"read {value_of(found)}, which does not count: see the readings")
-    return (name, "–", "not taken", "")
+            return (name, "–", "limitation", f"read {value_of(found)}, which does not count: see the readings")
+    return (name, "–", "limitation", _NO_REASON)
 
 
 def _how(job: Job, reading: Reading, *, place: bool = False) -> str:
@@ -121,7 +122,7 @@ def _worked_out(job: Job, answers: CircuitAnswers) -> list[_Row]:
     for proposal in answers.proposals:
         verdict = proposal.proposed.verdict or verdict
     rows: list[_Row] = []
-    limits = [f for f in verdict.findings if f.rule == "zs_within_limit" and f.basis is not None]
+    limits = [f for f in verdict.findings if f.limit_key == "zs" and f.basis is not None]
     if limits:
         least = min(limits, key=lambda f: f.limit or float("inf"))
         basis = least.basis
