@@ -100,7 +100,7 @@ def _in(path: Path, source: Path) -> str:
     rows = rows_read(data)
     # Tried on the job as it stands first, so that a bad row opens nothing and logs nothing.
     tried = changes_for(read_job(path), rows, datetime.now(UTC))
-    if not tried.changes:
+    if not tried.readings:
         return f"{path.name}: nothing new, {tried.there} readings were there already.\n"
     visit = Visit.open(path)
     try:
@@ -109,6 +109,6 @@ def _in(path: Path, source: Path) -> str:
         taken = take_in(visit, rows)
     finally:
         visit.close()
-    waits = sum(1 for change in taken.changes if not change.row.counts)  # type: ignore[union-attr]
+    waits = sum(not reading.counts for reading in taken.readings)
     more = f" {waits} of them do not count yet or any more: see the readings." if waits else ""
-    return f"{path.name}: {len(taken.changes)} readings taken in, {taken.there} were there already.{more}\n"
+    return f"{path.name}: {len(taken.readings)} readings taken in, {taken.there} were there already.{more}\n"

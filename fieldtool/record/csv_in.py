@@ -28,8 +28,9 @@ MOST_BYTES = 16_000_000
 _SIGNS = {word: sign for sign, word in SIGN_WORDS.items()}
 _MOMENT: TypeAdapter[Any] = TypeAdapter(Moment)
 _YES_NO = {"yes": True, "no": False, "": False}
-_PLAIN = ("id", "board", "circuit", "point", "answer", "mode", "probes", "instrument", "by", "taken")
-_PLAIN += ("replaces", "withdraws")
+_PLAIN = (
+    "id", "board", "circuit", "point", "answer", "mode", "probes", "instrument", "by", "taken", "replaces", "withdraws",
+)  # fmt: skip
 _TEXTS = ("raw", "why_not", "note", "doubt", "set_aside")
 
 

@@ -14,7 +14,7 @@ from fieldtool.quantities.show import plain, shorten
 from fieldtool.record.contents import contents
 from fieldtool.record.private import without_customer
 
-__all__ = ["PaperProblem", "free_name", "put_new", "record_bytes"]
+__all__ = ["PaperProblem", "free_name", "put_new", "record_bytes", "written_beside"]
 
 SUFFIXES = (".pdf", ".html")
 
@@ -81,6 +81,17 @@ def _said(problem: OSError, name: str) -> str:
     if problem.errno in (errno.ENOENT, errno.ENOTDIR):
         return f"{name} was not written: there is no such folder"
     return f"{name} was not written: {os.strerror(problem.errno or 0).lower()}"
+
+
+def written_beside(job: Job, job_path: Path, now: datetime) -> str:
+    """Write a job's record as PDF beside its file, under a name that no file has. Says in one sentence where it is."""
+    path = free_name(job_path, ".pdf")
+    try:
+        put_new(path, record_bytes(job, ".pdf", now))
+    except PaperProblem as problem:
+        return f"{problem}.".replace("..", ".")
+    folder = plain(str(path.parent))
+    return f"Record written: {shorten(plain(path.name), 40)} in {folder if len(folder) < 60 else '…' + folder[-50:]}"
 
 
 def free_name(job_path: Path, suffix: str) -> Path:

@@ -12,8 +12,11 @@ from fieldtool.job.changes import Change, ChangeProblem, Put, apply, new_ids
 from fieldtool.job.job import Job
 from fieldtool.job.kinds import TESTS
 from fieldtool.job.reading import Cell, Reading
+from fieldtool.quantities.entry import EntryProblem, parse
+from fieldtool.quantities.fields import FIELDS
 from fieldtool.record.csv_in import CsvProblem, RowRead, reading_of
 from fieldtool.safety.log import needs_taken
+from fieldtool.visit.entering import likely_span
 from fieldtool.visit.open_job import OpenJob
 
 __all__ = ["TakenIn", "changes_for", "take_in"]
@@ -26,11 +29,16 @@ WHY = "readings from CSV"
 
 @dataclass(frozen=True, slots=True)
 class TakenIn:
-    """What a file of readings makes of a job: the job after it, the changes, and how many were there already."""
+    """What a file of readings makes of a job: the job after it, the new readings, and how many were there already."""
 
     job: Job
-    changes: tuple[Change, ...]
+    readings: tuple[Reading, ...]
     there: int
+
+    @property
+    def changes(self) -> tuple[Change, ...]:
+        """The readings as changes to a job."""
+        return tuple(Put("readings", reading) for reading in self.readings)
 
 
 def changes_for(job: Job, rows: Sequence[RowRead], now: datetime) -> TakenIn:
@@ -43,7 +51,7 @@ def changes_for(job: Job, rows: Sequence[RowRead], now: datetime) -> TakenIn:
     known = {reading.id: reading for reading in job.readings}
     alike = {_said(reading) for reading in job.readings}
     stands: dict[Cell, Reading] = {reading.cell: reading for reading in job.standing()}
-    changes: list[Change] = []
+    new: list[Reading] = []
     lines: dict[str, int] = {}
     there = 0
     for row in rows:
@@ -68,12 +76,12 @@ def changes_for(job: Job, rows: Sequence[RowRead], now: datetime) -> TakenIn:
             raise CsvProblem(f"line {row.line}: the id {reading.id} stands in line {lines[reading.id]} already")
         lines[reading.id] = row.line
         stands[reading.cell] = reading
-        changes.append(Put("readings", reading))
+        new.append(reading)
     try:
-        after = apply(job, changes, at=now, why=WHY)
+        after = apply(job, [Put("readings", reading) for reading in new], at=now, why=WHY)
     except ChangeProblem as problem:
         raise CsvProblem(_with_line(str(problem), lines)) from problem
-    return TakenIn(after, tuple(changes), there)
+    return TakenIn(after, tuple(new), there)
 
 
 def _said(reading: Reading) -> str:
@@ -87,9 +95,8 @@ def _worked_out(
     more: dict[str, Any] = {}
     if reading.withdraws is not None or reading.origin == "limitation":
         return reading
-    if row.ask_doubt and any(circuit.id == reading.circuit for circuit in job.circuits):
-        said = remark(job, reading.circuit, reading.point, reading.test, reading.stage, reading.value, reading.sign)
-        more["doubt"] = said.sentence if said is not None and said.doubt else ""
+    if row.ask_doubt and reading.circuit in (None, *(circuit.id for circuit in job.circuits)):
+        more["doubt"] = _doubt(job, reading)
     if row.ask_taken and TESTS[reading.test].state == "dead" and reading.circuit is not None:
         known = any(circuit.id == reading.circuit for circuit in job.circuits)
         more["needs_taken"] = known and needs_taken(job, reading.circuit, reading.test, reading.point, now)
@@ -97,6 +104,21 @@ def _worked_out(
     if typed and reading.replaces is None and before is not None and before.probes in (None, reading.probes):
         more["replaces"] = before.id
     return reading.model_copy(update=more)
+
+
+def _doubt(job: Job, reading: Reading) -> str:
+    """What the screen would ask about this value; empty where it would ask nothing."""
+    said = remark(job, reading.circuit, reading.point, reading.test, reading.stage, reading.value, reading.sign)
+    if said is not None and said.doubt:
+        return said.sentence
+    key = TESTS[reading.test].field
+    if key is None or reading.value is None:
+        return ""
+    quantity = FIELDS[key]
+    number = f"{reading.value / quantity.scale:.9f}".rstrip("0").rstrip(".")
+    sign = reading.sign if reading.sign in ("<", ">") else ""
+    entry = parse(quantity, f"{sign}{number} {quantity.unit}", likely=likely_span(job, reading.test))
+    return entry.sentence if isinstance(entry, EntryProblem) else entry.unlikely or ""
 
 
 def _with_line(sentence: str, lines: dict[str, int]) -> str:
@@ -114,7 +136,7 @@ def _with_line(sentence: str, lines: dict[str, int]) -> str:
 def take_in(visit: OpenJob, rows: Sequence[RowRead]) -> TakenIn:
     """Take a file's rows into an open job as one entry of its history. Raises CsvProblem; then nothing was taken."""
     plan = changes_for(visit.job, rows, visit.clock())
-    if plan.changes:
+    if plan.readings:
         problem = visit.put_all(plan.changes, WHY)
         if problem or visit.save_problem:
             raise CsvProblem(problem or visit.save_problem)
