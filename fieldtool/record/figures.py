@@ -45,13 +45,13 @@ def provenance(used: Mapping[Asked, object]) -> Iterator[Block]:
     if not rows:
         yield Words("No published figure was needed yet.")
         return
-    yield Grid(
-        ("figure", "value", "where it stands", "how sure", "from"), tuple(sorted(rows)), (3.6, 1.6, 3.4, 1.8, 4.0)
-    )
     yield Words(
         "How sure: published = material with the figure was seen; derived = it follows from a formula; "
         "memory = written from memory and to be checked.",
         "small",
+    )
+    yield Grid(
+        ("figure", "value", "where it stands", "how sure", "from"), tuple(sorted(rows)), (3.6, 1.6, 3.4, 1.8, 4.0)
     )
 
 

@@ -193,6 +193,7 @@ def readings_taken(job: Job, circuit_id: str | None) -> Iterator[Block]:
         )
         for reading in rows:
             said = [f"not taken because: {reading.why_not}"] if reading.why_not else []
+            said += [f"asked at entry: {reading.doubt}"] if reading.doubt else []
             said += [reading.note] if reading.note else []
             if said:
                 head = f"{TESTS[reading.test].words} at {place(job, reading.point)}"
@@ -209,13 +210,21 @@ def _row(job: Job, reading: Reading) -> tuple[str, ...]:
     return (
         TESTS[reading.test].words,
         where,
-        value_of(reading),
+        _as_typed(reading),
         origin_words(reading),
         ", ".join(how) or "–",
         f"{instrument_words(job, reading)}, {person(job, reading.by)}",
         moment(reading.at),
         _counts(job, reading),
     )
+
+
+def _as_typed(reading: Reading) -> str:
+    """A reading's value, with what was typed where that says it otherwise."""
+    shown = value_of(reading)
+    if not reading.raw or reading.answer is not None or shown.startswith(reading.raw):
+        return shown
+    return f"{shown}\ntyped: {reading.raw}"
 
 
 def _counts(job: Job, reading: Reading) -> str:
@@ -230,12 +239,12 @@ def _counts(job: Job, reading: Reading) -> str:
     if reading.counts:
         extra = " (confirmed)" if reading.doubt else ""
         return f"yes{extra}"
-    if reading.origin == "limitation":
-        return "limitation"
     if reading.set_aside:
         return f"no: {reading.set_aside}"
+    if reading.origin == "limitation":
+        return "limitation"
     if reading.doubt and not reading.confirmed:
-        return f"no: {reading.doubt}"
+        return "no: doubtful, not confirmed"
     return {
         None: "no: when it was taken is not said",
         "not_sure": "no: not sure when taken",

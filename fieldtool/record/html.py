@@ -26,11 +26,11 @@ ul { margin: .3em 0; padding-left: 1.3em; }
 table { border-collapse: collapse; width: 100%; table-layout: fixed; font-size: 8.5pt; margin: .3em 0 .6em; }
 th, td { border-bottom: 1px solid #999; padding: .15em .35em .15em 0; text-align: left; vertical-align: top;
   white-space: pre-wrap; }
-th { border-bottom: 1.5px solid #000; } thead { display: table-header-group; } tr { break-inside: auto; }
+th { border-bottom: 1.5px solid #000; } thead { display: table-header-group; } tr { break-inside: avoid; }
 svg { width: 100%; height: auto; max-height: 230mm; } footer { margin-top: 2em; font-size: 8.5pt; }
 @media print { body { max-width: none; margin: 0; padding: 0; } .own { break-before: page; } }
 """
-_POLICY = "default-src 'none'; style-src 'unsafe-inline'; base-uri 'none'; form-action 'none'"
+_POLICY = "default-src 'none'; img-src data:; style-src 'unsafe-inline'; base-uri 'none'; form-action 'none'"
 
 
 def _shown(text: str) -> str:

@@ -32,8 +32,11 @@ _LEAST_TYPE_MM = 2.2
 class _Paper(FPDF):
     """A4 pages with the line of the foot and the page's number under each."""
 
-    def __init__(self, record: Record, now: datetime) -> None:
+    def __init__(self, record: Record, now: datetime, pages: int) -> None:
         super().__init__(orientation="P", unit="mm", format="A4")
+        # fpdf2 would put the number of pages wherever its own mark stands, in a person's text too.
+        self.alias_nb_pages("")
+        self.pages_in_all = pages
         self.set_margins(_SIDE, _TOP, _SIDE)
         self.set_auto_page_break(True, _FOOT)
         for style, name in _FILES.items():
@@ -56,7 +59,7 @@ class _Paper(FPDF):
         """The line under each page."""
         self.set_y(-12)
         self.set_font(_FACE, "", 7.5)
-        number = f"page {self.page_no()} of {{nb}}"
+        number = f"page {self.page_no()} of {self.pages_in_all}"
         foot = self.foot
         while self.get_string_width(foot) > self.epw - 30:
             foot = foot[: max(0, len(foot) - 4)] + "…" if len(foot) > 6 else ""
@@ -95,12 +98,17 @@ class _Paper(FPDF):
 
 def as_pdf(record: Record, now: datetime) -> bytes:
     """The record as a PDF file; ``now`` is its date of making."""
-    paper = _Paper(record, now)
+    # Drawn twice: how many pages there are is known only after the first time.
+    return bytes(_pages(record, now, _pages(record, now, 0).page_no()).output())
+
+
+def _pages(record: Record, now: datetime, count: int) -> _Paper:
+    paper = _Paper(record, now, count)
     paper.add_page()
     paper.text_block(record.title, 17, bold=True)
     for section in record.sections:
         _section(paper, section)
-    return bytes(paper.output())
+    return paper
 
 
 def _section(paper: _Paper, section: Section) -> None:
