@@ -101,7 +101,8 @@ def _worked_out(
         known = any(circuit.id == reading.circuit for circuit in job.circuits)
         more["needs_taken"] = known and needs_taken(job, reading.circuit, reading.test, reading.point, now)
     before = stands.get(reading.cell)
-    if typed and reading.replaces is None and before is not None and before.probes in (None, reading.probes):
+    same_place = before is not None and (reading.probes is None or before.probes in (None, reading.probes))
+    if typed and reading.replaces is None and before is not None and same_place:
         more["replaces"] = before.id
     return reading.model_copy(update=more)
 
