@@ -139,4 +139,11 @@ def _map(job: Job, answers: CircuitAnswers) -> tuple[Block, ...]:
         f"Beside each name: {shown}; what is only worked out is marked calc. In the boxes: 2 twin outlet, 1 single, "
         "F fused unit, A appliance, J joint box, – blanked box. Dashed: proposed. Lengths are not to scale."
     )
+    away = [
+        outlet.name or outlet.id
+        for request, outlet in job.new_outlets()
+        if request.circuit == answers.circuit_id and not (request.at or request.swap)
+    ]
+    if away:
+        key += f" Proposed, but not from a point of the map: {', '.join(away)}."
     return (drawn, Words(key, "small"))

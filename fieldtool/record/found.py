@@ -189,7 +189,7 @@ def readings_taken(job: Job, circuit_id: str | None) -> Iterator[Block]:
         yield Grid(
             ("test", "at", "reading", "origin", "how taken", "with, by", "when", "counts"),
             tuple(_row(job, reading) for reading in rows),
-            (2.6, 2.2, 1.6, 1.6, 3.5, 2.8, 2.8, 1.6),
+            (2.5, 2.1, 1.5, 1.5, 3.7, 3.0, 2.8, 1.6),
         )
         for reading in rows:
             said = [f"not taken because: {reading.why_not}"] if reading.why_not else []

@@ -25,6 +25,9 @@ _TEXT, _SMALL, _CELL = 9.5, 8.0, 7.6
 _LEAD = 0.46
 """Line height [mm] for each point of type size."""
 
+_TOGETHER_MM = 40.0
+"""A table lower than this is not parted [mm]."""
+
 _LEAST_TYPE_MM = 2.2
 """Type in a drawing smaller than this turns its page on its side [mm]."""
 
@@ -115,7 +118,7 @@ def _section(paper: _Paper, section: Section) -> None:
     first = section.blocks[0] if section.blocks else Words("")
     if isinstance(first, Picture) and _scale(paper, first, upright=True) * first.text_high < _LEAST_TYPE_MM:
         paper.add_page(orientation="L")
-    elif section.own_page or paper.left() < max(30, _first_needs(paper, first)):
+    elif section.own_page or paper.left() < _first_needs(paper, section):
         paper.add_page()
     paper.ln(3)
     paper.text_block(section.title, 12, bold=True)
@@ -129,9 +132,12 @@ def _section(paper: _Paper, section: Section) -> None:
         paper.add_page()
 
 
-def _first_needs(paper: _Paper, block: Block) -> float:
-    """What a section's heading and its first block take together at least [mm]; a heading never stands alone."""
-    return block.high * _scale(paper, block) + 18 if isinstance(block, Picture) else 30.0
+def _first_needs(paper: _Paper, section: Section) -> float:
+    """What a section's heading and what follows take together at least [mm]; a heading never stands alone."""
+    first = section.blocks[0] if section.blocks else None
+    if isinstance(first, Picture):
+        return max(30.0, first.high * _scale(paper, first) + 18)
+    return 48.0 if any(isinstance(block, Grid) for block in section.blocks[1:2]) else 30.0
 
 
 def _block(paper: _Paper, block: Block) -> None:
@@ -190,9 +196,13 @@ def _grid(paper: _Paper, grid: Grid) -> None:
     high = _CELL * _LEAD
     head = [paper.broken(text, column, _CELL, bold=True) for text, column in zip(grid.head, wide, strict=False)]
     rows = [[paper.broken(text, column, _CELL) for text, column in zip(row, wide, strict=True)] for row in grid.rows]
-    first = max((len(cell) for cell in rows[0]), default=1) if rows else 1
     deep = max((len(cell) for cell in head), default=0)
-    if paper.left() < (deep + min(first, 12)) * high + 3:
+    every = [deep, *(max(len(cell) for cell in row) for row in rows)]
+    whole = sum(every) * high + len(every) * 1.0
+    # A short table stays together; a long one starts where at least its first row finds room.
+    if paper.left() < (
+        whole + 2 if whole < _TOGETHER_MM else (deep + min(every[-1] if len(every) < 2 else every[1], 12)) * high + 3
+    ):
         paper.add_page()
     _drawn(paper, head, wide, bold=True)
     for row in rows:

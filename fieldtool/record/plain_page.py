@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from fieldtool.answers import VerdictWord
 from fieldtool.job.job import Job
+from fieldtool.network.shape import labelled_shape
 from fieldtool.record.blocks import Block, Points, Section, Words
 from fieldtool.record.gathered import CircuitAnswers, Proposal
 from fieldtool.record.say import moment
@@ -61,7 +62,7 @@ def plain_page(job: Job, circuits: tuple[CircuitAnswers, ...]) -> Section:
         name = spelled(job.circuit(answers.circuit_id).name or answers.circuit_id)
         blocks.append(Words(f"The circuit: {name}", "strong"))
         blocks.append(Words("What was found", "under"))
-        blocks.append(Words(_found(answers)))
+        blocks.append(Words(_found(job, answers)))
         for proposal in answers.proposals:
             blocks.extend(_proposed(job, proposal))
         if not answers.proposals:
@@ -71,11 +72,14 @@ def plain_page(job: Job, circuits: tuple[CircuitAnswers, ...]) -> Section:
     return Section("For the person who ordered the work", tuple(blocks), own_page=True)
 
 
-def _found(answers: CircuitAnswers) -> str:
+def _found(job: Job, answers: CircuitAnswers) -> str:
     leading = answers.reading.leading
     says = _IS.get(leading.id, "") if leading is not None else ""
     if leading is not None and leading.healthy and not answers.reading.shown_ring:
         says = "The readings so far fit a sound circuit, but they do not show all of it yet."
+    known = any(f.rule == "shape_known" and f.outcome == "holds" for f in answers.existing.findings)
+    if not says and known and labelled_shape(job, answers.circuit_id) == "radial":
+        says = "The readings fit a cable that runs from the board through its points and ends there."
     if not says:
         says = "What the circuit is stands in the record; the readings show no more than is said there."
     extra = {

@@ -14,7 +14,7 @@ from fieldtool.record.page_map import Spot, draw
 __all__ = ["plan"]
 
 _LETTER = {"twin": "2", "single": "1", "fcu": "F", "appliance": "A", "joint": "J", "blank": "–"}
-_COLUMN, _ROW, _TEXT = 1.2, 3.2, 1.7
+_COLUMN, _ROW, _TEXT = 1.2, 3.7, 1.7
 """Picture units for one cell and one row of the screen's map, and the height of type."""
 _BOX_WIDE, _BOX_HIGH, _BOARD_WIDE = 3.2, 2.1, 6.2
 _CELL_WIDE = 0.85
@@ -66,9 +66,9 @@ def plan(job: Job, circuit_id: str, *, ring: bool, values: Mapping[str, str]) ->
     for point_id in trunk:
         x, y = _at(spots[point_id])
         pen.box(x, y, every[point_id].letter)
-        room = int((pitch * _COLUMN - 2.2) / _CELL_WIDE)
-        pen.label(x + 2.0, y + 2.6, shorten(every[point_id].name, room))
-        pen.label(x + 2.0, y + 4.4, shorten(values.get(point_id, ""), room))
+        room = int((pitch * _COLUMN - 2.5) / _CELL_WIDE)
+        pen.label(x + 2.3, y + 2.6, shorten(every[point_id].name, room))
+        pen.label(x + 2.3, y + 4.4, shorten(values.get(point_id, ""), room))
     for point_id in spots:
         if point_id not in trunk:
             wide = max(wide, _hung(pen, point_id, spots, every, values))
@@ -78,9 +78,12 @@ def plan(job: Job, circuit_id: str, *, ring: bool, values: Mapping[str, str]) ->
 def _every(job: Job, circuit_id: str) -> dict[str, _Hung]:
     points = job.points_of(circuit_id)
     out = {p.id: _Hung(_LETTER[p.kind], p.name or p.id, p.behind or p.spur_from or "", False) for p in points}
-    for request, outlet in job.new_outlets():
-        if request.circuit == circuit_id:
-            out[outlet.id] = _Hung(_LETTER[outlet.kind], outlet.name, request.at or request.swap or "", True)
+    for request in job.requests:
+        # The first new outlet hangs on the place of attachment, each further one on the outlet before it.
+        before = request.at or request.swap or ""
+        for outlet in request.outlets if request.circuit == circuit_id else ():
+            out[outlet.id] = _Hung(_LETTER[outlet.kind], outlet.name or outlet.id, before, True)
+            before = outlet.id
     return out
 
 

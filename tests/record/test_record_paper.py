@@ -15,6 +15,7 @@ from fieldtool.job.job import Job
 from fieldtool.record.contents import contents
 from fieldtool.record.pdf import as_pdf
 from fieldtool.record.plain_page import spelled
+from fieldtool.record.plan import plan
 from fieldtool.reference.edition import EDITION_SENTENCE
 from tests.jobs import facts, made, sample
 from tests.record.papers import NOW, SAMPLE_NAMES, html_of, pdf_of, squeezed, text_of, whole_job
@@ -224,3 +225,28 @@ def test_a_large_ring_is_drawn_on_a_page_on_its_side_and_every_point_is_listed()
 def test_the_pdf_opens_without_a_word_of_complaint(caplog: pytest.LogCaptureFixture) -> None:
     PdfReader(io.BytesIO(as_pdf(contents(whole_job(), NOW), NOW)), strict=True).pages[0].extract_text()
     assert not caplog.records
+
+
+def test_the_map_draws_ring_spurs_and_what_is_proposed_in_its_own_place() -> None:
+    picture = plan(sample("larch_row"), "c3", ring=True, values={"p1": "0.30 Ω"})
+    assert picture is not None
+    words = [label.text for label in picture.labels]
+    assert {"by door", "0.30 Ω", "larder", "utility", "island", "A", "B"} <= set(words)
+    assert [box.text for box in picture.boxes if box.dashed] == ["2"]
+    # Ten points, one proposed, the board; every box inside the picture.
+    assert len(picture.boxes) == 12
+    for box in picture.boxes:
+        assert 0 <= box.x <= picture.wide - box.wide
+        assert 0 <= box.y <= picture.high - box.high
+
+
+def test_a_second_new_outlet_hangs_on_the_first_not_on_the_point() -> None:
+    picture = plan(sample("mill_cottages"), "c5", ring=False, values={})
+    assert picture is not None
+    first, second = (box for box in picture.boxes if box.dashed)
+    stems = [s for s in picture.strokes if s.dashed and s.x1 == s.x2]
+    # The second's stem starts at the first's box: at its middle, from its edge.
+    assert any(
+        s.x1 == pytest.approx(first.x + first.wide / 2) and s.y1 in (first.y, first.y + first.high) for s in stems
+    )
+    assert second.x > first.x
