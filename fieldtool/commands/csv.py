@@ -76,12 +76,17 @@ def run(args: list[str], out: TextIO, err: TextIO) -> int:
 
 def _out(path: Path, target: Path, what: str, *, customer: bool) -> str:
     from fieldtool.record.csv_out import findings_csv, readings_csv
-    from fieldtool.record.paper import put_new
+    from fieldtool.record.paper import PaperProblem, put_new
     from fieldtool.record.private import without_customer
+    from fieldtool.reference.load import ReferenceProblem
 
     job = read_job(path)
     job = job if customer else without_customer(job)
-    written = put_new(target, findings_csv(job) if what == "findings" else readings_csv(job))
+    try:
+        data = findings_csv(job) if what == "findings" else readings_csv(job)
+    except ReferenceProblem as problem:
+        raise PaperProblem(f"the job names what no table has: {problem}") from problem
+    written = put_new(target, data)
     return f"{target.name}: {what} {'written' if written else 'there already, with the same content'}.\n"
 
 

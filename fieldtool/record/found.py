@@ -26,6 +26,8 @@ from fieldtool.record.say import (
 __all__ = ["circuit_found", "place_found", "readings_taken"]
 
 _PAIR = (2.0, 5.0)
+_SHORT = 40
+"""A longer reason stands below the table, not in its narrow last column [characters]."""
 
 
 def _pairs(rows: list[tuple[str, str]]) -> Grid:
@@ -195,6 +197,7 @@ def readings_taken(job: Job, circuit_id: str | None) -> Iterator[Block]:
             said = [f"not taken because: {reading.why_not}"] if reading.why_not else []
             said += [f"asked at entry: {reading.doubt}"] if reading.doubt else []
             said += [reading.note] if reading.note else []
+            said += [f"does not count: {why}"] if len(why := _set_aside(job, reading)) > _SHORT else []
             if said:
                 head = f"{TESTS[reading.test].words} at {place(job, reading.point)}"
                 yield Words(f"{head}: {' – '.join(said)}", "small")
@@ -227,6 +230,16 @@ def _as_typed(reading: Reading) -> str:
     return f"{shown}\ntyped: {reading.raw}"
 
 
+def _set_aside(job: Job, reading: Reading) -> str:
+    """Why a reading was taken back or set aside; empty where it was not."""
+    later = next((row for row in job.readings if row.withdraws == reading.id), None)
+    return later.set_aside if later is not None else reading.set_aside
+
+
+def _in_short(why: str) -> str:
+    return f"no: {why}" if len(why) <= _SHORT else "no: see below"
+
+
 def _counts(job: Job, reading: Reading) -> str:
     """Whether a reading counts, and if not, why."""
     for later in job.readings:
@@ -235,12 +248,12 @@ def _counts(job: Job, reading: Reading) -> str:
                 f"no: corrected to {value_of(later)}" if value_of(later) != value_of(reading) else "no: entered again"
             )
         if later.withdraws == reading.id:
-            return f"no: {later.set_aside or 'taken back'}"
+            return _in_short(later.set_aside or "taken back")
     if reading.counts:
         extra = " (confirmed)" if reading.doubt else ""
         return f"yes{extra}"
     if reading.set_aside:
-        return f"no: {reading.set_aside}"
+        return _in_short(reading.set_aside)
     if reading.origin == "limitation":
         return "limitation"
     if reading.doubt and not reading.confirmed:

@@ -13,6 +13,7 @@ from fieldtool.jobfile.swap import Files
 from fieldtool.quantities.show import plain, shorten
 from fieldtool.record.contents import contents
 from fieldtool.record.private import without_customer
+from fieldtool.reference.load import ReferenceProblem
 
 __all__ = ["PaperProblem", "free_name", "put_new", "record_bytes", "written_beside"]
 
@@ -24,10 +25,15 @@ class PaperProblem(Exception):
 
 
 def record_bytes(job: Job, suffix: str, now: datetime, *, customer: bool = True) -> bytes:
-    """A job's record as the bytes of a file of this kind. Raises PaperProblem for a kind there is not."""
+    """A job's record as the bytes of a file of this kind. Raises PaperProblem for a kind there is not, and for a job
+    whose cable or device is in no table.
+    """
     if suffix not in SUFFIXES:
         raise PaperProblem("a record is written as .pdf or .html; name the file so")
-    made = contents(job if customer else without_customer(job), now)
+    try:
+        made = contents(job if customer else without_customer(job), now)
+    except ReferenceProblem as problem:
+        raise PaperProblem(f"the job names what no table has: {problem}") from problem
     if suffix == ".html":
         from fieldtool.record.html import as_html
 

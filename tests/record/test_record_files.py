@@ -60,6 +60,22 @@ def test_what_cannot_be_written_ends_with_two_and_one_sentence(
     assert list(tmp_path.iterdir()) == []
 
 
+@pytest.mark.parametrize("what", ["record", "findings"])
+def test_a_cable_that_no_table_has_is_one_sentence(tmp_path: Path, what: str) -> None:
+    body = whole_visit()
+    body["circuits"][0]["cable"] = "no_such_cable"
+    path = tmp_path / "job.json"
+    path.write_text(made(body).model_dump_json(by_alias=True))
+    out, err = io.StringIO(), io.StringIO()
+    if what == "record":
+        code = record.run([str(path), "-o", str(tmp_path / "r.pdf")], out, err)
+    else:
+        code = csv.run(["out", str(path), "-o", str(tmp_path / "f.csv"), "--what", "findings"], out, err)
+    assert (code, out.getvalue(), err.getvalue().count("\n")) == (2, "", 1)
+    assert "no_such_cable" in err.getvalue()
+    assert list(tmp_path.iterdir()) == [path]
+
+
 def test_the_same_content_is_no_quarrel(tmp_path: Path) -> None:
     assert put_new(tmp_path / "a.csv", b"one") is True
     assert put_new(tmp_path / "a.csv", b"one") is False
