@@ -7,6 +7,7 @@ from math import isfinite
 from fieldtool.job.job import Job
 from fieldtool.job.kinds import TESTS, words
 from fieldtool.job.reading import Reading
+from fieldtool.quantities.show import round_limit_down
 from fieldtool.record.blocks import Block, Grid, Section, Words
 from fieldtool.record.gathered import CircuitAnswers
 from fieldtool.record.say import amount, cable_words, device_words, origin_words, value_of
@@ -127,7 +128,9 @@ def _worked_out(job: Job, answers: CircuitAnswers) -> list[_Row]:
         least = min(limits, key=lambda f: f.limit or float("inf"))
         basis = least.basis
         assert basis is not None
-        rows.append(("Largest Zs allowed, as a reading", amount(basis.value, "ohm"), "calculated", basis.basis))
+        # A limit is copied rounded down, never up.
+        most = round_limit_down(basis.value, 3 if basis.value < 10 else 0)
+        rows.append(("Largest Zs allowed, as a reading", f"{most:g} Ω", "calculated", basis.basis))
     for item in verdict.predicted:
         if item.test in ("r1_r2", "zs") and isfinite(item.value):
             name = f"{TESTS[item.test].words} to expect"  # type: ignore[index]

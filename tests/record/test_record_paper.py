@@ -140,6 +140,14 @@ def test_figures_to_copy_are_on_one_page_and_each_says_where_it_comes_from() -> 
     assert named["Polarity"][2] == "limitation"
 
 
+@pytest.mark.parametrize("name, most", [("larch_row", "1.092 Ω"), ("quarry_yard", "1666 Ω")])
+def test_a_limit_is_copied_rounded_down(name: str, most: str) -> None:
+    """0.8 × 0.95 × 230 / 160 = 1.0925 (411.4.4, Appendix 3); 50 V / 30 mA = 1666.7 (411.5.3)."""
+    section = next(s for s in contents(sample(name), NOW).sections if s.title.startswith("Figures to copy"))
+    row = next(row for row in section.blocks[1].rows if row[0].startswith("Largest Zs"))  # type: ignore[union-attr]
+    assert row[1:3] == (most, "calculated")
+
+
 def test_a_value_read_as_calculated_is_never_copied_as_measured() -> None:
     body = facts("larch_row")
     for reading in body["readings"]:
