@@ -15,6 +15,8 @@ COMMANDS = {
     "rules": "print the catalogue of rules",
     "history": "print who entered what when, and what it replaced",
     "mend": "examine a damaged job file and restore a copy of it",
+    "record": "write the record of a job as PDF or HTML",
+    "csv": "write readings or findings as CSV, or take readings in from CSV",
 }
 """Headless commands, each a module of ``fieldtool.commands`` with a ``run(args, out, err)``."""
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from datetime import datetime
+from pathlib import Path
 from typing import TYPE_CHECKING
 
 from rich.text import Text
@@ -218,6 +219,21 @@ class Workbench(Screen[None]):
     ) -> None:
         if self.visit is not None and self.visit.adopt(job, request, circuit, reading, ways):
             self.refresh_all()
+
+    def write_record(self) -> None:
+        """Write the record of the job as it stands beside its file, in the background; says where it is."""
+        if self.visit is None:
+            self.say("Choose a job first.")
+            return
+        self.say("Writing the record ...")
+        self._record(self.visit.job, self.visit.path, self.visit.clock())
+
+    @work(thread=True, exit_on_error=False, group="record")
+    def _record(self, job: Job, path: Path, now: datetime) -> None:
+        from fieldtool.record.paper import written_beside
+
+        said = written_beside(job, path, now)
+        self.app.call_from_thread(self.say, said)
 
     def ways(self) -> tuple[WayAnswer, ...]:
         """The ways as they were judged last; empty while they are being worked out."""
