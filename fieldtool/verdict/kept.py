@@ -2,15 +2,19 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import dataclass
 from math import isclose
 from typing import Literal
 
-from fieldtool.answers import Verdict
+from fieldtool.answers import Finding, Verdict
 from fieldtool.job.job import Job
 from fieldtool.job.request import KeptFinding, VerdictKept
 
 __all__ = ["Changed", "changes", "entries_since", "last_kept"]
+
+_Answer = KeptFinding | Finding
+"""What both have: rule, place, outcome and figures."""
 
 Kind = Literal["new", "gone", "outcome", "figures"]
 
@@ -60,11 +64,7 @@ def changes(kept: VerdictKept, verdict: Verdict | None) -> tuple[Changed, ...]:
     ``verdict`` is None where the way no longer serves: then every finding is gone. Where a rule has several answers
     at one place, its worst one is told. Figures are compared to nine digits.
     """
-    now = tuple(
-        KeptFinding(rule=f.rule, place=f.place, outcome=f.outcome, measured=f.measured, limit=f.limit, unit=f.unit)
-        for f in (verdict.findings if verdict is not None else ())
-        if f.outcome != "not_applicable"
-    )
+    now = (f for f in (verdict.findings if verdict is not None else ()) if f.outcome != "not_applicable")
     then_by, now_by = _by_place(kept.findings), _by_place(now)
     out = []
     for key in {**then_by, **now_by}:
@@ -74,14 +74,14 @@ def changes(kept: VerdictKept, verdict: Verdict | None) -> tuple[Changed, ...]:
     return tuple(sorted(out, key=lambda item: (not item.worse, item.rule, item.place)))
 
 
-def _by_place(findings: tuple[KeptFinding, ...]) -> dict[tuple[str, str], list[KeptFinding]]:
-    found: dict[tuple[str, str], list[KeptFinding]] = {}
+def _by_place(findings: Iterable[_Answer]) -> dict[tuple[str, str], list[_Answer]]:
+    found: dict[tuple[str, str], list[_Answer]] = {}
     for finding in sorted(findings, key=lambda f: (_weight(f.outcome), f.measured or 0.0, f.limit or 0.0)):
         found.setdefault((finding.rule, finding.place), []).append(finding)
     return found
 
 
-def _compared(then: list[KeptFinding], now: list[KeptFinding]) -> Changed | None:
+def _compared(then: list[_Answer], now: list[_Answer]) -> Changed | None:
     same_outcomes = [f.outcome for f in then] == [f.outcome for f in now]
     if same_outcomes and all(_same_figures(a, b) for a, b in zip(then, now, strict=True)):
         return None
@@ -107,7 +107,7 @@ def _weight(outcome: str) -> int:
     return _WORST.index(outcome) if outcome in _WORST else len(_WORST)
 
 
-def _same_figures(then: KeptFinding, now: KeptFinding) -> bool:
+def _same_figures(then: _Answer, now: _Answer) -> bool:
     return all(
         (a is None) == (b is None) and (a is None or b is None or isclose(a, b, rel_tol=1e-9, abs_tol=1e-12))
         for a, b in ((then.measured, now.measured), (then.limit, now.limit))
