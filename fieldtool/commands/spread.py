@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import logging
 import os
+import signal
 from collections import deque
 from collections.abc import Callable, Iterable, Iterator
 from concurrent.futures import Executor, Future, ProcessPoolExecutor
@@ -104,7 +105,12 @@ def _cluster(address: str) -> Iterator[tuple[Executor, int]]:
 
 def _pool(helpers: int) -> AbstractContextManager[ProcessPoolExecutor]:
     # Started afresh, not forked: the same on every platform, and no thread's lock is copied half held.
-    return ProcessPoolExecutor(helpers, mp_context=get_context("spawn"))
+    return ProcessPoolExecutor(helpers, mp_context=get_context("spawn"), initializer=_leave_ctrl_c_to_the_command)
+
+
+def _leave_ctrl_c_to_the_command() -> None:
+    # A terminal sends it to every process; a helper would end with a traceback on the screen.
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
 
 
 def _parcels(things: Iterable[T]) -> Iterator[list[T]]:

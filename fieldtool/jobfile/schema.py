@@ -19,7 +19,8 @@ _DRAFT = "https://json-schema.org/draft/2020-12/schema"
 def job_schema() -> dict[str, Any]:
     """The schema of a job file of the present make, draft 2020-12.
 
-    What the schema refuses, the tool refuses too; what the tool wrote, the schema accepts.
+    What the schema refuses, the tool refuses too (save ``true`` for a 1 where only some numbers may stand); what the
+    tool wrote, the schema accepts.
     """
     made = Job.model_json_schema(by_alias=True)
     definitions = made["$defs"]

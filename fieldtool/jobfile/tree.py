@@ -54,18 +54,18 @@ def job_files(folder: Path) -> Iterator[Found]:
             continue
         path = folder / name
         told = path.relative_to(root).as_posix()
-        if path.is_symlink():
-            problem = _link_problem(root, path)
-            if problem is not None:
-                yield Found(told, problem)
-        elif path.is_dir():
-            try:
+        try:
+            if path.is_symlink():
+                problem = _link_problem(root, path)
+                if problem is not None:
+                    yield Found(told, problem)
+            elif path.is_dir():
                 open_folders.append((path, iter(_names(path))))
-            except OSError:
-                said = f"{_short(name)} cannot be looked into: see who may read it."
-                yield Found(told, JobFileProblem("unreadable", said))
-        elif path.suffix.lower() == _SUFFIX:
-            yield Found(told)
+            elif path.suffix.lower() == _SUFFIX:
+                yield Found(told)
+        except OSError:
+            said = f"{_short(name)} cannot be looked into: see who may read it."
+            yield Found(told, JobFileProblem("unreadable", said))
 
 
 def _names(folder: Path) -> list[str]:

@@ -141,6 +141,8 @@ def spread_run(folder: Path, helpers: int) -> tuple[float, float, int, int]:
 
 def _print_one(label: str, rows: Iterable[tuple[float, float, float, float, bool]]) -> None:
     rows = list(rows)
+    if not rows:
+        return
     parse, verdict, margins, review = (statistics.mean(row[n] for row in rows) * 1e3 for n in range(4))
     print(
         f"{label:<22} {len(rows):>5} {parse:>8.2f} {verdict:>8.2f} {margins:>9.2f} {review:>8.2f} "
@@ -167,7 +169,7 @@ def main() -> None:
                 print(f"{jobs:>7} {helpers:>5} {took:>8.1f} {jobs / took:>8.1f} {jobs / busy:>8.1f} "
                       f"{own / 1024:>6.0f} {other / 1024 if helpers > 1 else 0:>13.0f}", flush=True)  # fmt: skip
             print(f"        ({jobs} files made in {made:.1f} s)", flush=True)
-        found = list(job_files(folder))[:: max(1, given.jobs // given.sample)]
+        found = random.Random(2).sample(list(job_files(folder)), min(given.sample, given.jobs))
         gc.collect()
         gc.freeze()
         rows = [one_job(folder, item) for item in found]
