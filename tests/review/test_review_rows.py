@@ -13,8 +13,12 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from fieldtool.answers import Finding, Outcome
 from fieldtool.diagnosis.explain import explain
 from fieldtool.diagnosis.too_exact import too_exact
+from fieldtool.reference.edition import RULE_SET
+from fieldtool.rules.engine import Rule, _digest
+from fieldtool.rules.facts import Facts as Facts_
 from fieldtool.verdict.best import by_way, standing
 from fieldtool.verdict.compare import compare, judge
 from fieldtool.verdict.contract import contract
@@ -62,29 +66,47 @@ def test_the_quick_search_finds_the_way_that_judging_them_all_puts_first(
             assert got.verdict.findings == want.verdict.findings
 
 
-def test_a_designers_decision_does_not_mislead_the_quick_search() -> None:
-    job = sample("larch_row", lambda body: body["requests"][0].update(outlets=[outlet("w1", 60)]))
-    request = job.requests[0]
-    reading = explain(job, request.circuit)
-    stopped = next(
-        finding
-        for answer in compare(job, request, reading)
-        if answer.verdict is not None
-        for finding in answer.verdict.findings
-        if finding.outcome == "broken" and finding.designer_may_decide
-    )
+WAYS = [way.key for way in every_way()]
+ANSWERS = st.sampled_from(["holds", "condition", "broken", "cannot_tell", "not_applicable"])
+
+
+def made_up_rule(rule_id: str, advice: bool, answers: dict[str, Outcome]) -> Rule:
+    """A rule that answers as it is told, way by way, and that a designer may decide."""
+
+    def body(facts: Facts_) -> tuple[Finding, ...]:
+        return (Finding(rule_id, answers[facts.way], "1", facts.circuit.id, "made up"),)
+
+    return Rule(rule_id, "1", "Made up.", (), (), True, "made_up", advice, lambda _: True, body)
+
+
+@given(
+    tables=st.lists(st.fixed_dictionaries(dict.fromkeys(WAYS, ANSWERS)), min_size=1, max_size=3),
+    advice=st.sets(st.sampled_from([0, 1, 2])),
+    decided=st.none() | st.sampled_from([0, 1, 2]),
+)
+def test_no_way_is_let_go_that_could_have_come_first(
+    tables: list[dict[str, Outcome]], advice: set[int], decided: int | None
+) -> None:
+    """Rules that answer anything at all, advice and a designer's decision among them, against judging every way."""
+    rules = tuple(made_up_rule(f"rule_{n}", n in advice, table) for n, table in enumerate(tables))
+    broken = Finding("", "broken", "1", "c3", "made up")
 
     def decide(body: Facts) -> None:
-        body["requests"][0].update(outlets=[outlet("w1", 60)])
-        body["overrides"] = [
-            {"id": "d1", "request": request.id, "rule": stopped.rule, "place": stopped.place, "rule_set": "2026-12",
-             "figures": stopped.figures, "by": "e2", "reason": "seen", "at": "2026-12-01T09:00:00Z"}
-        ]  # fmt: skip
+        if decided is not None:
+            body["overrides"] = [
+                {"id": "d1", "request": "q1", "rule": f"rule_{decided}", "place": "c3", "rule_set": RULE_SET,
+                 "figures": _digest(f"rule_{decided}", broken), "by": "e2", "reason": "seen",
+                 "at": "2026-12-01T09:00:00Z"}
+            ]  # fmt: skip
 
-    decided = sample("larch_row", decide)
-    want = best_of_all(decided, decided.requests[0], reading)
-    got = standing(decided, decided.requests[0], reading)
-    assert (got.way, got.verdict.findings) == (want.way, want.verdict.findings)
+    job = sample("larch_row", decide)
+    reading = explain(job, "c3")
+    with pytest.MonkeyPatch.context() as patch:
+        for module in ("fieldtool.rules.engine", "fieldtool.verdict.best", "fieldtool.verdict.headroom"):
+            patch.setattr(f"{module}.catalogue", lambda: rules)
+        want, got = best_of_all(job, job.requests[0], reading), standing(job, job.requests[0], reading)
+    assert (got.way, got.outcome) == (want.way, want.outcome)
+    assert (got.verdict and got.verdict.findings) == (want.verdict and want.verdict.findings)
 
 
 @pytest.mark.parametrize("name", NAMES)
