@@ -15,6 +15,8 @@ COMMANDS = {
     "rules": "print the catalogue of rules",
     "history": "print who entered what when, and what it replaced",
     "mend": "examine a damaged job file and restore a copy of it",
+    "record": "write the record of a job as PDF or HTML",
+    "csv": "write readings or findings as CSV, or take readings in from CSV",
     "review": "review every job in a folder: what each waits for, what stops it, what changed",
     "schema": "print the JSON Schema of the job file, of the verdict or of the review",
     "completion": "print what makes bash, zsh or fish complete commands and options",

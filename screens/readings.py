@@ -191,6 +191,11 @@ class Readings(Pane):
             self.come_back = self.cell()
             self.choose(doubtful)
             return
+        if self.stage == "after_work":
+            empty = next((n for n, cell in enumerate(cells) if visit.standing(cell) is None), None)
+            if empty is not None:
+                self.choose(empty)
+            return
         verdict = self.bench.verdict()
         for gap in verdict.missing if verdict is not None else ():
             if gap.test == "survey":

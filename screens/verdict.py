@@ -246,6 +246,14 @@ class VerdictPane(Pane):
             self.bench.say(visit.keep_verdict(request_id, "kept") or "Kept with its figures.")
             self.bench.judge()
 
+    def _record(self) -> None:
+        visit, circuit = self.bench.visit, self.bench.circuit
+        request_id = visit.request_of(circuit) if visit is not None and circuit is not None else None
+        if visit is not None and request_id is not None and not visit.read_only and visit.has_ways(request_id):
+            visit.keep_verdict(request_id, "record")
+            self.bench.judge()
+        self.bench.write_record()
+
     def actions(self) -> tuple[Action, ...]:
         """What the verdict leads to."""
         return (
@@ -253,6 +261,7 @@ class VerdictPane(Pane):
             Action("2", "work is done: read after work", self._done),
             Action("3", "give it up: leave it closed off", lambda: self._mark(abandoned_at=self._now())),
             Action("7", "keep this verdict", self._keep),
+            Action("8", "write the record beside the job", self._record),
         )
 
     def notes(self) -> tuple[str, str]:
@@ -262,7 +271,7 @@ class VerdictPane(Pane):
         if verdict is not None and verdict.missing:
             names = ", ".join(gap.words for gap in verdict.missing[:4])
             first = f"??  missing, in this order: {shorten(names, 66)}"
-        return (first, self._to_finish() or "1 work begins   2 work is done   3 give it up   7 keep this verdict")
+        return (first, self._to_finish() or "1 work begins  2 work is done  3 give it up  7 keep  8 write the record")
 
     def _to_finish(self) -> str:
         """What keeps the job from being finished, once the work is said to be done; empty before that."""
@@ -294,7 +303,7 @@ class VerdictPane(Pane):
         return (
             "Each line is one rule's answer; Enter shows its working to re-work by hand.",
             "Conditions are done before energising; a missing reading never counts as a yes.",
-            "1 keeps the verdict and begins the work; 2 when it is done: readings after work follow.",
+            "1 keeps the verdict and begins the work; 2 when it is done; 8 writes the record as PDF.",
         )
 
 

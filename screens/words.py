@@ -14,22 +14,11 @@ __all__ = ["POINT_MARK", "choice_words", "members_of", "show_value", "wrapped"]
 POINT_MARK = {"twin": "(2)", "single": "(1)", "fcu": "(F)", "appliance": "(A)", "joint": "(J)", "blank": "( )"}
 """How each kind of point is drawn, on the rail and on the map."""
 
-_WORDS = {
-    "all_poles": "all poles",
-    "line_only": "line only",
-    "not_needed": "none needed",
-    "not_seen": "not seen",
-    "off_zone": "off the zones",
-    "in_zone": "in a safe zone",
-    "deep": "over 50 mm deep",
-    "mixed_colours": "old and new colours",
-}
-
 
 def choice_words(member: object) -> str:
     """A member of a closed list as it is offered."""
     text = str(int(member)) if isinstance(member, float) and member.is_integer() else str(member)
-    return _WORDS.get(text, words(text))
+    return words(text)
 
 
 def members_of(info: FieldInfo) -> tuple[object, ...]:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from datetime import datetime
+from pathlib import Path
 from typing import TYPE_CHECKING
 
 from rich.text import Text
@@ -219,6 +220,21 @@ class Workbench(Screen[None]):
         if self.visit is not None and self.visit.adopt(job, request, circuit, reading, ways):
             self.refresh_all()
 
+    def write_record(self) -> None:
+        """Write the record of the job as it stands beside its file, in the background; says where it is."""
+        if self.visit is None:
+            self.say("Choose a job first.")
+            return
+        self.say("Writing the record ...")
+        self._record(self.visit.job, self.visit.path, self.visit.clock())
+
+    @work(thread=True, exit_on_error=False, group="record")
+    def _record(self, job: Job, path: Path, now: datetime) -> None:
+        from fieldtool.record.paper import written_beside
+
+        said = written_beside(job, path, now)
+        self.app.call_from_thread(self.say, said)
+
     def ways(self) -> tuple[WayAnswer, ...]:
         """The ways as they were judged last; empty while they are being worked out."""
         if self.visit is None or self.circuit is None:
@@ -324,7 +340,17 @@ class Workbench(Screen[None]):
 
     # keys ----------------------------------------------------------------------------------------------------
     def on_key(self, event: events.Key) -> None:
-        """Keys that are not typing."""
+        """Keys that did not come by the entry line."""
+        if self.key(event.key):
+            event.stop()
+            event.prevent_default()
+
+    def key(self, name: str) -> bool:
+        """A key that is not typing. True when it was one.
+
+        The entry line calls this from its own handler: a key that bubbled up here would be overtaken by an Enter
+        that was pressed after it, and Enter would act on the wrong row.
+        """
         moves: dict[str, Callable[[], None]] = {
             "up": lambda: self.front.move(-1),
             "down": lambda: self.front.move(1),
@@ -344,14 +370,14 @@ class Workbench(Screen[None]):
             "ctrl+y": self.redo,
             "ctrl+q": self.field.leave,
         }
-        if event.key in moves:
-            event.stop()
-            event.prevent_default()
-            if self.visit is None and event.key in ("f2", "f3", "f4", "f5", "f7", "f9", "ctrl+z", "ctrl+y"):
-                self.say("Choose a job first, or 7 for a new one.")
-                return
-            self.guarded(moves[event.key])
-            self.entry.focus()
+        if name not in moves:
+            return False
+        if self.visit is None and name in ("f2", "f3", "f4", "f5", "f7", "f9", "ctrl+z", "ctrl+y"):
+            self.say("Choose a job first, or 7 for a new one.")
+            return True
+        self.guarded(moves[name])
+        self.entry.focus()
+        return True
 
     def do_f6(self) -> None:
         """What row 24 offers; while nothing can be saved, another folder comes first."""

@@ -15,7 +15,7 @@ settings.register_profile(
 settings.register_profile("deep", max_examples=2000, deadline=None)
 settings.load_profile(os.environ.get("HYPOTHESIS_PROFILE", "ci"))
 
-OUTSIDE_PROGRAMS = ("ngspice", "tmux")
+OUTSIDE_PROGRAMS = ("ngspice", "tmux", "chromium")
 
 
 @pytest.fixture(autouse=True)

@@ -13,6 +13,7 @@ from typing import Any
 from fieldtool.job.job import Job
 from fieldtool.jobfile.opening import JobFile
 
+NOON = datetime(2026, 12, 1, 12, 0, tzinfo=UTC)
 SAMPLES = Path(__file__).parent.parent / "sample_jobs"
 Facts = dict[str, Any]
 

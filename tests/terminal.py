@@ -86,6 +86,18 @@ class Terminal:
             time.sleep(0.03)
         raise AssertionError(f"{words!r} never stood on the screen:\n" + "\n".join(self.lines()))
 
+    def settled(self, quiet: float = 0.12, most: float = 4.0) -> list[str]:
+        """The screen once it has not changed for a while [s]."""
+        end, before, since = time.monotonic() + most, self.lines(), time.monotonic()
+        while time.monotonic() < end:
+            time.sleep(0.02)
+            now = self.lines()
+            if now != before:
+                before, since = now, time.monotonic()
+            elif time.monotonic() - since >= quiet:
+                break
+        return before
+
     def kill(self) -> None:
         """End the child as a flat battery does."""
         with contextlib.suppress(ProcessLookupError):

@@ -13,6 +13,7 @@ from typing import Any, TextIO
 from fieldtool.commands.arguments import Parser, Usage
 from fieldtool.jobfile.opening import read_job
 from fieldtool.jobfile.problems import JobFileProblem
+from fieldtool.reference.load import ReferenceProblem
 
 __all__ = ["run"]
 
@@ -39,6 +40,8 @@ def run(args: list[str], out: TextIO, err: TextIO) -> int:
         return _problem("usage", str(problem), as_json, out, err)
     except JobFileProblem as problem:
         return _problem(problem.code, problem.sentence, as_json, out, err)
+    except ReferenceProblem as problem:
+        return _problem("not-in-the-tables", f"The job names what no table has: {problem}.", as_json, out, err)
     except KeyError:
         return _problem("no-such-circuit", f"There is no circuit {given.circuit} in this job.", as_json, out, err)
     if given.json:

@@ -243,6 +243,16 @@ _WORDS: dict[str, str] = {
     "102": "in a stud wall, touching the inner face",
     "103": "in a stud wall, not touching",
     "c": "clipped or in plaster",
+    "all_poles": "all poles",
+    "line_only": "line only",
+    "not_needed": "none needed",
+    "off_zone": "off the zones",
+    "in_zone": "in a safe zone",
+    "deep": "over 50 mm deep",
+    "mixed_colours": "old and new colours",
+    "rcbo_30_type_a": "a 30 mA type A RCBO at the board",
+    "bs7288_departure": "an outlet with an RCD in it, as a recorded departure",
+    "fcu_first": "a fused unit first",
 }
 
 

@@ -6,11 +6,11 @@ Nothing is extrapolated: outside a table the answer is ``OutsideTable``, at both
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import cache
 from itertools import pairwise
 from typing import Any
 
 from fieldtool.reference.load import ReferenceProblem, Table, table
+from fieldtool.reference.used import noted
 
 __all__ = [
     "Cable",
@@ -131,7 +131,7 @@ def _next_up(name: str, value: float, column: str) -> Figure:
     raise OutsideTable(f"{source.number} ends at {source.rows[-1][source.key]}; {value} is beyond it")
 
 
-@cache
+@noted
 def constant(key: str) -> Figure:
     """One single figure of the rules, exact by its key, such as ``ring.least_iz_a``. Raises OutsideTable."""
     source = table("figures")
@@ -142,7 +142,7 @@ def constant(key: str) -> Figure:
     return Figure(row["value"], row["unit"], made)
 
 
-@cache
+@noted
 def device(key: str) -> DeviceType:
     """A kind of device, exact by its catalogue key. Raises OutsideTable."""
     source = table("devices")
@@ -162,7 +162,7 @@ def device(key: str) -> DeviceType:
     )
 
 
-@cache
+@noted
 def cable(key: str) -> Cable:
     """A kind of cable, exact by its catalogue key. Raises OutsideTable."""
     source = table("cables")
@@ -194,14 +194,14 @@ def cables() -> tuple[Cable, ...]:
     return tuple(cable(row["key"]) for row in table("cables").rows)
 
 
-@cache
+@noted
 def r_ohm_per_m(area_mm2: float) -> Figure:
     """Resistance of a plain copper conductor at 20 °C, exact by its size [ohm/m]. Source: IEC 60228 maxima."""
     found = _exact("conductors", float(area_mm2), "ohm_per_km")
     return Figure(found.value / 1000, "ohm/m", found.provenance)
 
 
-@cache
+@noted
 def zs_max_ohm(device_key: str, in_a: float) -> Figure:
     """The largest loop impedance for 0.4 s, Cmin in, unrounded where it is derived [ohm]; exact.
 
@@ -222,6 +222,7 @@ def zs_max_ohm(device_key: str, in_a: float) -> Figure:
     return Figure(value, "ohm", _from(source, row, "Cmin × U0 / (multiple × In)"))
 
 
+@noted
 def disconnection_s(tt: bool) -> Figure:
     """The disconnection time of a final circuit, exact by the earthing system [s]. Source: Table 41.1."""
     return _exact("disconnection", "tt" if tt else "tn", "final_s")
@@ -232,6 +233,7 @@ _METHOD_COLUMNS = {"c": "c_a", "a": "a_a", "b": "b_a", "100": "m100_a", "101": "
 }
 
 
+@noted
 def it_a(family: str, area_mm2: float, method: str) -> Figure:
     """Tabulated current-carrying capacity, exact by size and reference method [A].
 
@@ -246,16 +248,19 @@ def it_a(family: str, area_mm2: float, method: str) -> Figure:
     return _exact(name, float(area_mm2), column)
 
 
+@noted
 def mv_per_a_m(family: str, area_mm2: float) -> Figure:
     """Volt drop of a cable at 70 °C, exact by size [mV/A/m]. Source: Tables 4D5, 4D1B."""
     return _exact(family, float(area_mm2), "mv_per_a_m")
 
 
+@noted
 def ca(ambient_c: float) -> Figure:
     """Rating factor for ambient air, next warmer row [1]; 25 °C and below take the 25 °C row. Source: Table 4B1."""
     return _next_up("ambient", ambient_c, "ca")
 
 
+@noted
 def cg(circuits: int, how: str) -> Figure:
     """Rating factor for circuits grouped, next larger group [1]. Source: Table 4C1. Raises OutsideTable."""
     if circuits < 1:
@@ -265,6 +270,7 @@ def cg(circuits: int, how: str) -> Figure:
     return _next_up("grouping", float(circuits), how)
 
 
+@noted
 def ci(length_mm: float) -> Figure:
     """Rating factor for a length wholly inside thermal insulation, interpolated between rows [1].
 
@@ -285,11 +291,13 @@ def ci(length_mm: float) -> Figure:
     raise OutsideTable(f"{length_mm} mm is not in {source.number}")
 
 
+@noted
 def k_factor(kind: str = "incorporated_70") -> Figure:
     """Factor k of a copper protective conductor, exact [A·s^0.5/mm²]. Source: Tables 54.2, 54.3."""
     return _exact("k_factors", kind, "k")
 
 
+@noted
 def let_through_a2s(curve: str, in_a: float, fault_a: float) -> Figure:
     """Let-through energy of a class 3 breaker, next column up by fault current [A²s]. Source: BS EN 60898-1.
 
@@ -304,26 +312,31 @@ def let_through_a2s(curve: str, in_a: float, fault_a: float) -> Figure:
     return _exact("let_through", f"{curve}:{band}:{column}", "most_a2s")
 
 
+@noted
 def bond_mm2(neutral_mm2: float) -> Figure:
     """Main bonding where the supply neutral is also earth, next row up by the neutral's size [mm²]. Table 54.8."""
     return _next_up("bonding_pme", neutral_mm2, "bond_mm2")
 
 
+@noted
 def least_insulation_mohm(test_v: float) -> Figure:
     """Least insulation resistance, exact by test voltage [MΩ]. Source: Table 64."""
     return _exact("insulation_resistance", float(test_v), "least_mohm")
 
 
+@noted
 def rcd_most_ms(kind: str) -> Figure:
     """Longest trip time at rated residual current, exact: ``general``, ``s`` or ``bs4293`` [ms]. Source: 643.8."""
     return _exact("rcd_times", kind, "most_ms")
 
 
+@noted
 def terminals_take(area_mm2: float) -> Figure:
     """How many conductors of a size a BS 1363 outlet's terminal takes, next size up [1]."""
     return _next_up("terminals", area_mm2, "most")
 
 
+@noted
 def usual_ze(system: str) -> tuple[Figure, Figure]:
     """Ze usually declared, and the value above which it is questioned, exact by earthing system [ohm]."""
     return _exact("usual_ze", system, "usual_ohm"), _exact("usual_ze", system, "question_ohm")

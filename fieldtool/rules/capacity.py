@@ -4,12 +4,12 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
-from functools import lru_cache
 
 from fieldtool.job.circuit import Run
 from fieldtool.job.job import Job
 from fieldtool.job.kinds import InstallMethod
 from fieldtool.reference.look import Provenance, ca, cable, cg, ci, it_a
+from fieldtool.reference.used import noted
 from fieldtool.rules.engine import NotKnown
 from fieldtool.rules.facts import Facts
 from fieldtool.rules.needs import missing_for
@@ -26,7 +26,7 @@ class Capacity:
     provenance: Provenance
 
 
-@lru_cache(maxsize=1024)
+@noted
 def _capacity(
     key: str, method: InstallMethod, ambient_c: float, grouped: int, how: str, insulated_mm: float
 ) -> Capacity:

@@ -62,7 +62,7 @@ def finished(job: Job, request: Request, repeat: tuple[str, ...] = (), out_of_ba
     if request.work_done_at is None:
         reasons.append("the work is not logged as done")
     reasons += [
-        f"{TESTS[test].words} at {job.point_name(place)} not taken"  # type: ignore[index]
+        f"{TESTS[test].words} at {_named(job, request, place)} not taken"  # type: ignore[index]
         for test, place, taken in after_work(job, request, repeat)
         if taken is None
     ]
@@ -74,3 +74,7 @@ def finished(job: Job, request: Request, repeat: tuple[str, ...] = (), out_of_ba
     if not any(entry.kind == "handed_over" and entry.circuit == request.circuit for entry in job.isolation):
         reasons.append("not handed over")
     return tuple(dict.fromkeys(reasons))
+
+
+def _named(job: Job, request: Request, place: str) -> str:
+    return (job.circuit(place).name or place) if place == request.circuit else job.point_name(place)

@@ -13,7 +13,7 @@ from fieldtool.safety.parting import holds_back, outstanding
 from fieldtool.safety.states import CircuitState, blocked_by, state
 from fieldtool.safety.tasks import RADIAL, RING, Task
 
-__all__ = ["arranged_first", "back_first", "log_step", "put_back", "step_of", "task_of"]
+__all__ = ["arranged_first", "back_first", "is_ring", "log_step", "put_back", "step_of", "task_of"]
 
 _DO: dict[str, tuple[str, str]] = {
     "survey_eye": (
@@ -80,6 +80,14 @@ def log_step(job: Job, circuit_id: str, now: datetime, place: str) -> NextStep:
     )
 
 
+def is_ring(job: Job, circuit_id: str) -> bool:
+    """Whether the tests of a ring are the ones to take: by its end to end readings, else by its label."""
+    ends = [r for r in job.standing() if r.circuit == circuit_id and r.test in ("r1", "rn", "r2") and r.counts]
+    if any(r.sign == "=" for r in ends):
+        return True
+    return job.circuit(circuit_id).label_claims != "radial" and not (len(ends) >= 3)
+
+
 def task_of(table: tuple[Task, ...], test: str) -> Task | None:
     """The task that reads a test; None where the table has none."""
     if test.startswith("ir_"):
@@ -87,8 +95,10 @@ def task_of(table: tuple[Task, ...], test: str) -> Task | None:
     return next((item for item in table if item.test == test), None)
 
 
-def main_switch_first(job: Job, circuit_id: str) -> NextStep:
-    """Nothing is parted or joined at the board before the main switch is off and locked."""
+def _board_dead_first(job: Job, circuit_id: str, found: CircuitState, now: datetime) -> NextStep:
+    """Nothing is parted or joined at the board before the main switch is off and locked, and the board proved dead."""
+    if "main_switch_off" in dict(found.done):
+        return log_step(job, circuit_id, now, "board")
     name = shorten(job.circuit(circuit_id).name or circuit_id, NAME_CELLS)
     return step_of(
         f"Main switch off, locked, before {name} is parted: F9 +.",
@@ -105,7 +115,7 @@ _RADIAL_PARTED = ("legs", "r1_r2")
 
 
 def arranged_first(
-    job: Job, circuit_id: str, table: tuple[Task, ...], test: str, found: CircuitState
+    job: Job, circuit_id: str, table: tuple[Task, ...], test: str, found: CircuitState, now: datetime
 ) -> NextStep | None:
     """What has to be taken off, parted or joined before a reading: the first thing that is not as it must be."""
     rows = outstanding(job, circuit_id)
@@ -125,7 +135,7 @@ def arranged_first(
     elif join is not None and not joined:
         first = step_of(join.words, join.why or "The arrangement that the reading is taken in.", "join")
     if first is not None and found.word != "board_dead":
-        return main_switch_first(job, circuit_id)
+        return _board_dead_first(job, circuit_id, found, now)
     return first
 
 

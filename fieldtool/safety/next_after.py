@@ -10,7 +10,7 @@ from fieldtool.job.kinds import TESTS
 from fieldtool.job.request import Request
 from fieldtool.safety.after import after_work
 from fieldtool.safety.budget import name_of
-from fieldtool.safety.first import arranged_first, back_first, log_step, step_of
+from fieldtool.safety.first import arranged_first, back_first, is_ring, log_step, step_of
 from fieldtool.safety.parting import earth_unproved, holds_back
 from fieldtool.safety.states import CircuitState
 from fieldtool.safety.tasks import AFTER, RADIAL, RING, Task
@@ -34,8 +34,8 @@ def after_step(
         test, place = dead[0]
         if not found.dead:
             return log_step(job, circuit_id, now, "board")
-        table = RING if "ln_cross" in repeat else RADIAL
-        arranged = arranged_first(job, circuit_id, table, test, found)
+        table = RING if is_ring(job, circuit_id) else RADIAL
+        arranged = arranged_first(job, circuit_id, table, test, found, now)
         if arranged is not None:
             return arranged
         return step_of(_after_words(AFTER[2], job, circuit_id, test, place), why, test, test=test, place=place)

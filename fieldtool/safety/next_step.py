@@ -13,7 +13,7 @@ from fieldtool.job.job import Job
 from fieldtool.job.kinds import TESTS
 from fieldtool.quantities.show import shorten
 from fieldtool.safety.budget import NAME_CELLS, name_of
-from fieldtool.safety.first import arranged_first, back_first, log_step, step_of, task_of
+from fieldtool.safety.first import arranged_first, back_first, is_ring, log_step, step_of, task_of
 from fieldtool.safety.next_after import abandoned_step, after_step
 from fieldtool.safety.parting import holds_back, outstanding
 from fieldtool.safety.states import CircuitState, state
@@ -139,13 +139,6 @@ def _earth_off(found: CircuitState, verdict: Verdict | None) -> NextStep | None:
 _AT_ORIGIN = ("ze", "pfc", "ra")
 
 
-def _ring(job: Job, circuit_id: str) -> bool:
-    ends = [r for r in job.standing() if r.circuit == circuit_id and r.test in ("r1", "rn", "r2") and r.counts]
-    if any(r.sign == "=" for r in ends):
-        return True
-    return job.circuit(circuit_id).label_claims != "radial" and not (len(ends) >= 3)
-
-
 def _missing(job: Job, circuit_id: str, found: CircuitState, now: datetime, verdict: Verdict | None) -> NextStep | None:
     if verdict is None or not verdict.missing:
         return None
@@ -166,15 +159,17 @@ def _take(
         return _origin(first, where)
     if spec.state == "live":
         return _live(job, circuit_id, found, now, first, where)
-    table = RING if _ring(job, circuit_id) else RADIAL
+    table = RING if is_ring(job, circuit_id) else RADIAL
     if not found.dead:
         return log_step(job, circuit_id, now, "board")
     task = task_of(table, first.test)
-    arranged = arranged_first(job, circuit_id, table, first.test, found)
+    arranged = arranged_first(job, circuit_id, table, first.test, found, now)
     if arranged is not None:
         return arranged
     if task is None:
-        return step_of(f"Read {spec.words} at {name_of(job, place)}.", "The verdict waits for it.", first.test, **where)
+        asked = f"Read {spec.words}" if spec.field else f"Say whether {spec.words} is right"
+        at = f" at {name_of(job, place)}" if spec.where == "point" or spec.field else ""
+        return step_of(f"{asked}{at}.", "The verdict waits for it.", first.test, **where)
     left = sum(gap.test == first.test for gap in gaps)
     return step_of(
         task.words.format(test=spec.words, place=name_of(job, place)),
@@ -239,7 +234,7 @@ def _asked_for(
     if request.work_done_at is not None:
         return after_step(job, circuit_id, found, now, request, repeat)
     if verdict is None:
-        return step_of("Look at the verdict: F5.", "Every reading it needs is there.", "verdict")
+        return step_of("Wait: the verdict is being worked out.", "What was entered last is not judged yet.", "verdict")
     if verdict.outcome == "stop":
         first = verdict.reasons("broken")
         why = first[0].says if first else ""
@@ -249,6 +244,12 @@ def _asked_for(
             "Choose the way: F4, then / and its digit, then Enter.",
             "The verdict is kept for the way you choose.",
             "ask",
+        )
+    if request.work_begun_at is None:
+        return step_of(
+            "Keep this verdict and begin the work: F5, then 1.",
+            "What was known when the work began stands on the record with its figures.",
+            "begin",
         )
     place = request.at or request.swap or "board"
     if place not in found.places:

@@ -272,6 +272,12 @@ def _step(fold: _Fold, entry: IsolationEntry, wanted: tuple[str, ...]) -> None:
     else:
         fold.done[kind] = entry
         fold.reason = "Not all steps of the log are done."
+        if kind == "main_switch_off" and "locked" in fold.done:
+            # The whole board goes off later than the circuit did: it is locked and proved there anew.
+            for step in ("locked", *_PROOF):
+                fold.done.pop(step, None)
+            fold.pending.clear()
+            fold.proved.pop("board", None)
 
 
 _ALARMS = {

@@ -7,7 +7,7 @@ from datetime import datetime
 from fieldtool.answers import StateView, StateWord
 from fieldtool.job.isolation import Parted
 from fieldtool.job.job import Job
-from fieldtool.quantities.show import shorten
+from fieldtool.quantities.show import cells, shorten
 from fieldtool.reference.edition import EDITION_SHORT
 from fieldtool.safety.budget import MIND_CELLS, fit, name_of
 from fieldtool.safety.parting import earth_unproved, outstanding
@@ -77,7 +77,12 @@ def _mind(job: Job, circuit_id: str | None, found: CircuitState, now: datetime) 
         said.append("Locked, key kept.")
     if not said:
         return fit(EDITION_SHORT, MIND_CELLS)
-    return fit(" ".join(said), MIND_CELLS)
+    # Whole sentences only, the most pressing first: one that would be cut is left to the log.
+    kept = said[0]
+    for more in said[1:]:
+        if cells(f"{kept} {more}") <= MIND_CELLS:
+            kept = f"{kept} {more}"
+    return fit(kept, MIND_CELLS)
 
 
 def _parted_words(job: Job, rows: list[Parted]) -> str:
@@ -85,6 +90,8 @@ def _parted_words(job: Job, rows: list[Parted]) -> str:
     legs = [letter for letter, key in (("L", "line"), ("N", "neutral"), ("E", "cpc")) if key in conductors]
     if rows[0].sort == "parted" and len(legs) == len(rows):
         return f"legs {' '.join(legs)} at {name_of(job, rows[0].place)}"
+    if rows[0].sort == "joined" and rows[0].conductor == "cross":
+        return f"{'L-N' if 'to N' in rows[0].what else 'L-E'} crossed at board"
     first = shorten(rows[0].what, 28)
     return first if len(rows) == 1 else f"{first} +{len(rows) - 1}"
 

@@ -60,7 +60,7 @@ RADIAL: tuple[Task, ...] = (
 
 AFTER: tuple[Task, ...] = (
     Task("prove_there", "Prove {place} dead before you open or cut anything there.", "dead"),
-    Task("work", "Do the work at {place}; then log it done on Proposed work.", "dead"),
+    Task("work", "Do the work at {place}; then log it done: F5, then 2.", "dead"),
     Task("dead_again", "After the work: {what}", "dead"),
     Task("restore", "All back, covers on: restore the supply and log it: F9 +.", "any"),
     Task("live_again", "After the work, live: {what}", "live"),

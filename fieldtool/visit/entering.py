@@ -14,6 +14,7 @@ from fieldtool.job.changes import (
     Put,
     new_ids,
 )
+from fieldtool.job.job import Job
 from fieldtool.job.kinds import TESTS, Mode, Probes, Stage, TestKey
 from fieldtool.job.reading import Cell, Reading
 from fieldtool.job.rows import Row
@@ -22,7 +23,7 @@ from fieldtool.quantities.fields import field
 from fieldtool.quantities.show import show
 from fieldtool.visit.open_job import OpenJob
 
-__all__ = ["CellView", "Entered", "Entering"]
+__all__ = ["CellView", "Entered", "Entering", "likely_span"]
 
 _TT_LOOP = (1.0, 500.0)
 """Loop readings that are no surprise through an earth electrode [ohm]; common practice."""
@@ -52,6 +53,11 @@ class CellView:
     second: str = ""
 
 
+def likely_span(job: Job, test: str) -> tuple[float, float] | None:
+    """The span in which a loop reading is no surprise, where the system is TT [ohm]; None for the usual one."""
+    return _TT_LOOP if job.supply.system == "tt" and test in ("ze", "zdb", "zs") else None
+
+
 class Entering(OpenJob):
     """An open job that takes readings."""
 
@@ -63,13 +69,8 @@ class Entering(OpenJob):
             return ""
         if spec.field is None:
             return {"1": "right", "2": "wrong"}.get(raw.strip(), "1 right, 2 wrong")
-        entry = parse(field(spec.field), raw, likely=self._likely(test))
+        entry = parse(field(spec.field), raw, likely=likely_span(self.job, test))
         return entry.sentence if isinstance(entry, EntryProblem) else entry.echo
-
-    def _likely(self, test: str) -> tuple[float, float] | None:
-        """The span in which a loop reading is no surprise, where the system is TT [ohm]; None for the usual one."""
-        tt = self.job.supply.system == "tt"
-        return _TT_LOOP if tt and test in ("ze", "zdb", "zs") else None
 
     def standing(self, cell: Cell, probes: Probes | None = None) -> Reading | None:
         """The newest reading that stands in a cell, whether it counts yet or not."""
@@ -100,7 +101,7 @@ class Entering(OpenJob):
                 return Entered(False, f"{spec.words}: type 1 for right or 2 for wrong. Nothing was kept.")
             values["answer"] = answer
         else:
-            entry = parse(field(spec.field), raw, likely=self._likely(test))
+            entry = parse(field(spec.field), raw, likely=likely_span(self.job, test))
             if isinstance(entry, EntryProblem):
                 return Entered(False, entry.sentence)
             values |= {"value": entry.value, "sign": entry.sign}

@@ -170,6 +170,10 @@ class OpenJob:
         """Add a row, or put it in place of the one with its id. Empty, or one sentence saying what is wrong."""
         return self._apply([Put(table, row)], why)
 
+    def put_all(self, changes: Sequence[Change], why: str) -> str:
+        """Make several changes as one entry, all or none. Empty, or one sentence saying what is wrong."""
+        return self._apply(changes, why)
+
     def remove(self, table: str, row_id: str, why: str = "") -> str:
         """Take a row out. Empty, or one sentence saying why not."""
         return self._apply([Remove(cast(Any, table), row_id)], why)

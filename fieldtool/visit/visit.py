@@ -20,9 +20,11 @@ from fieldtool.job.changes import (
 )
 from fieldtool.job.isolation import IsolationEntry
 from fieldtool.job.job import Job
-from fieldtool.job.kinds import IsolationKind
+from fieldtool.job.kinds import IsolationKind, Stage
+from fieldtool.job.reading import Cell
 from fieldtool.job.request import KeptFinding, Override, VerdictKept
 from fieldtool.reference.edition import EDITION, RULE_SET
+from fieldtool.safety.after import after_work
 from fieldtool.visit.entering import Entering
 
 __all__ = ["Visit", "warm"]
@@ -110,6 +112,15 @@ class Visit(Entering):
             return ()
         found = self.answer(request_id)
         return found.repeat_tests if found is not None else ()
+
+    def walk(self, circuit_id: str, by: str = "test", stage: Stage = "as_found") -> tuple[Cell, ...]:
+        """The cells of one circuit in the order a visit takes them; after the work those of the chosen way alone."""
+        request_id = self.request_of(circuit_id) if stage == "after_work" else None
+        repeat = self.repeat_tests(request_id) if request_id is not None else ()
+        if request_id is None or not repeat or self.job.request(request_id).chosen_way is None:
+            return super().walk(circuit_id, by, stage)
+        due = after_work(self.job, self.job.request(request_id), repeat)
+        return tuple((circuit_id, None if place == circuit_id else place, test, stage) for test, place, _ in due)
 
     def request_of(self, circuit_id: str) -> str | None:
         """The newest request on a circuit; None where there is none."""

@@ -108,7 +108,7 @@ class Isolation(Sheet):
             )
         if item.asks == "volts":
             between = _BETWEEN[min(len(self.volts), 2)]
-            return Target(f"dead at {self.bench.job.point_name(self.place)}, {between}, volts", "number", self._volt)
+            return Target(f"{between} volts at {self.bench.job.point_name(self.place)}", "number", self._volt)
         asked = {"tester": "tester, and proving unit"}.get(item.asks, item.words)
         return Target(asked, "text", self._detail, value=self._last(item))
 

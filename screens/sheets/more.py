@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from functools import partial
 from typing import Any
 
 from rich.text import Text
@@ -13,6 +14,8 @@ from screens.base import Action, Line, Sheet, Target
 from screens.workbench import Workbench
 
 __all__ = ["More"]
+
+_RECORD = "write the record beside the job, as PDF"
 
 
 class More(Sheet):
@@ -43,7 +46,7 @@ class More(Sheet):
         """What can be done."""
         pane = self._pane()
         if pane is None:
-            return [("what the readings say", self._explanations)]
+            return [("what the readings say", self._explanations), (_RECORD, self._record)]
         walk = "by point" if pane.by == "test" else "by test"
         mode = "no-trip" if pane.mode == "high_current" else "high current"
         probes = {"front": "terminals", "terminals": "adaptor", "adaptor": "front"}[pane.probes]
@@ -58,6 +61,7 @@ class More(Sheet):
             ("take the reading in this cell back", self._withdraw),
             ("a missed point before this one: its name", lambda: self._ask("insert")),
             (f"readings {stage}", self._stage),
+            (_RECORD, self._record),
         ]
 
     def _ask(self, what: str) -> str:
@@ -68,6 +72,11 @@ class More(Sheet):
         self.bench.close_sheet()
         self.bench.open_named("explanations")
         return ""
+
+    def _record(self) -> str:
+        self.bench.close_sheet()
+        self.bench.write_record()
+        return self.bench.entry.said
 
     def _walk(self) -> str:
         pane = self._pane()
@@ -122,7 +131,7 @@ class More(Sheet):
         for number, (words, _) in enumerate(self.offers()):
             here = number == self.cursor
             style = f"bold {self.palette.cur[0]} on {self.palette.cur[1]}" if here else self.palette.text
-            out.append(Line(Text(f"{'>' if here else ' '} {number + 1}  {words}", style=style), number))
+            out.append(Line(Text(f"{'>' if here else ' '} {(number + 1) % 10}  {words}", style=style), number))
         return out
 
     def target(self) -> Target:
@@ -139,8 +148,11 @@ class More(Sheet):
         return True, said
 
     def actions(self) -> tuple[Action, ...]:
-        """Digits of the offers."""
-        return tuple(Action(str(n + 1), words, lambda n=n: self._act(n)) for n, (words, _) in enumerate(self.offers()))  # type: ignore[misc]
+        """Digits of the offers; 0 is the tenth."""
+        return tuple(
+            Action(str((number + 1) % 10), words, partial(self._act, number))
+            for number, (words, _) in enumerate(self.offers())
+        )
 
     def _act(self, number: int) -> None:
         self._do(number)

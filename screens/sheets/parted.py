@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from functools import partial
 
 from rich.text import Text
 
@@ -42,12 +43,15 @@ class PartedSheet(Sheet):
             what = "legs A and B of L, N and E" if ring else "line and neutral of the circuit"
             out.append((f"parted and marked: {what}", lambda: self._part(wanted)))
         crossed = (
-            ("L of A to N of B, L of B to N of A", "L to N crossed"),
-            ("L of A to E of B, L of B to E of A", "L to E crossed"),
+            ("L of A to N of B, L of B to N of A", "L to N crossed", "cross"),
+            ("L of A to E of B, L of B to E of A", "L to E crossed", "cross"),
         )
-        for what, words in (*(crossed if ring else ()), ("line to earth", "line to earth, one link")):
-            if not any(row.sort == "joined" for row in rows):
-                out.append((f"joined: {words}", lambda what=what: visit.part(circuit, what, "joined", "link")))  # type: ignore[misc]
+        if not any(row.sort == "joined" for row in rows):
+            joins = (*(crossed if ring else ()), ("line to earth", "line to earth, one link", "link"))
+            out += [
+                (f"joined: {words}", partial(visit.part, circuit, what, "joined", conductor))
+                for what, words, conductor in joins
+            ]
         for kind, words in (
             ("main_switch_off", "main switch off"), ("neutral_clamped", "neutral clamped and proved"),
             ("origin_test_begins", "origin test begins"), ("origin_test_ends", "origin test over, earth back and tight"),

@@ -67,6 +67,9 @@ class EntryLine(Widget, can_focus=True):
         elif key in ("home", "end") and self.typed:
             event.stop()
             self.at = 0 if key == "home" else len(self.typed)
+        elif self.bench.key(key):
+            event.stop()
+            event.prevent_default()
         elif event.is_printable and event.character:
             event.stop()
             event.prevent_default()

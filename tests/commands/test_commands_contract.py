@@ -82,6 +82,15 @@ def test_unusable_files_end_with_two_and_one_sentence(tmp_path: Path, content: s
     assert json.loads(out)["error"]["sentence"]
 
 
+def test_a_cable_that_no_table_has_is_one_sentence(tmp_path: Path) -> None:
+    body = facts("larch_row")
+    body["circuits"][0]["cable"] = "no_such_cable"
+    code, out, err = judged(written(tmp_path, body), "--json")
+    assert code == 2
+    assert err.count("\n") == 1
+    assert "no_such_cable" in json.loads(out)["error"]["sentence"]
+
+
 def test_a_directory_and_a_file_that_is_not_there(tmp_path: Path) -> None:
     assert judged(tmp_path)[0] == 2
     assert judged(tmp_path / "none.json")[0] == 2

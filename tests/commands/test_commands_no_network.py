@@ -9,6 +9,7 @@ from pathlib import Path
 import pytest
 
 from fieldtool.jobfile.shelf import open_sample
+from fieldtool.record.paper import record_bytes
 from fieldtool.verdict.contract import contract
 from fieldtool.visit import Visit
 from tests.jobs import SAMPLES
@@ -26,5 +27,7 @@ def test_a_visit_opens_no_socket(tmp_path: Path, monkeypatch: pytest.MonkeyPatch
     assert visit.enter(("c3", "p1", "zs", "as_found"), "0.31", mode="high_current").accepted
     assert visit.ways("q1")
     assert visit.keep_verdict("q1", "kept") == ""
+    for suffix in (".pdf", ".html"):
+        assert len(record_bytes(visit.job, suffix, visit.clock())) > 10_000
     visit.close()
     assert contract(visit.job)["exit"] == 0

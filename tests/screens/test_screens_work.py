@@ -248,7 +248,10 @@ async def test_the_way_is_chosen_as_the_next_step_says(tmp_path: Path) -> None:
         bench = app.bench
         assert bench is not None
         assert bench.visit is not None
-        await pilot.pause(1.0)
+        for _ in range(500):
+            if bench.visit.has_ways("q1"):
+                break
+            await pilot.pause(0.02)
         assert bench.core()[1].sentence == "Choose the way: F4, then / and its digit, then Enter."
         await pilot.press("f4")
         typed(app, "/2\n")
@@ -289,6 +292,49 @@ async def test_markup_in_names_is_shown_as_it_was_typed(tmp_path: Path) -> None:
         await settled(pilot, app)
         assert app.bench is not None
         assert "[red]door" in app.bench.front.render().plain  # type: ignore[union-attr]
+
+
+async def test_giving_up_leaves_it_closed_off_and_on_the_record(tmp_path: Path) -> None:
+    app = app_on(tmp_path)
+    async with app.run_test(size=(80, 24)) as pilot:
+        await settled(pilot, app)
+        bench = app.bench
+        assert bench is not None
+        await pilot.press("f5")
+        await pilot.pause(1.0)
+        await pilot.press("3")
+        await pilot.pause(0.2)
+        assert "Insulate dead ends" in bench.core()[1].sentence
+        bench.open_named("parted")
+        await pilot.pause()
+        offers = [words for words, _ in bench.front.offers()]  # type: ignore[attr-defined]
+        place = next(n for n, words in enumerate(offers) if words.startswith("left insulated"))
+        await pilot.press(*["down"] * place, "enter")
+        await pilot.pause(0.2)
+        assert bench.visit is not None
+        assert bench.visit.job.isolation[-1].kind == "abandoned"
+        assert "Left as logged" in bench.core()[1].sentence
+        await pilot.press("escape", "f5")
+        await pilot.pause(0.5)
+        assert "Finished" in bench.front.notes()[1]
+
+
+async def test_keys_of_a_burst_are_taken_in_their_order(tmp_path: Path) -> None:
+    """Down, down, Enter in one write: Enter acts on the third row, not on the one the cursor was at."""
+    app = app_on(tmp_path)
+    async with app.run_test(size=(80, 24)) as pilot:
+        await settled(pilot, app)
+        bench = app.bench
+        assert bench is not None
+        bench.open_named("parted")
+        await pilot.pause()
+        offers = [words for words, _ in bench.front.offers()]  # type: ignore[attr-defined]
+        wanted = offers.index("left the site")
+        for key in (*["down"] * wanted, "enter"):
+            bench.entry.post_message(events.Key(key, None))
+        await pilot.pause(0.2)
+        assert bench.visit is not None
+        assert bench.visit.job.isolation[-1].kind == "left_site"
 
 
 async def test_every_sheet_opens_over_every_other_and_closes_again(tmp_path: Path) -> None:
