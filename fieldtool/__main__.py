@@ -17,6 +17,9 @@ COMMANDS = {
     "mend": "examine a damaged job file and restore a copy of it",
     "record": "write the record of a job as PDF or HTML",
     "csv": "write readings or findings as CSV, or take readings in from CSV",
+    "review": "review every job in a folder: what each waits for, what stops it, what changed",
+    "schema": "print the JSON Schema of the job file, of the verdict or of the review",
+    "completion": "print what makes bash, zsh or fish complete commands and options",
 }
 """Headless commands, each a module of ``fieldtool.commands`` with a ``run(args, out, err)``."""
 
@@ -58,8 +61,7 @@ def _run(args: list[str]) -> int:
         sys.stdout.write(f"fieldtool {__version__}\n")
         return 0
     if args and args[0] in COMMANDS:
-        module = importlib.import_module(f"fieldtool.commands.{args[0]}")
-        return int(module.run(args[1:], sys.stdout, sys.stderr))
+        return _command(args[0], args[1:])
     if args and (args[0].startswith("-") or len(args) > 1 or not _is_file_name(args[0])):
         sys.stderr.write(f"fieldtool: {args[0]} is neither a command nor a job file; see fieldtool --help.\n")
         return 2
@@ -68,6 +70,22 @@ def _run(args: list[str]) -> int:
         return 2
     app = importlib.import_module("screens.app")
     return int(app.run(Path(args[0]) if args else None))
+
+
+def _command(name: str, args: list[str]) -> int:
+    """Run a headless command; what nobody foresaw ends with 2 and one sentence, and is kept for whoever mends it."""
+    try:
+        module = importlib.import_module(f"fieldtool.commands.{name}")
+        return int(module.run(args, sys.stdout, sys.stderr))
+    except BrokenPipeError:
+        raise
+    except Exception as problem:
+        from fieldtool.mishap import keep
+
+        kept = keep(problem)
+        where = f"what happened is kept in {kept}" if kept is not None else "its log file could not be written"
+        sys.stderr.write(f"fieldtool {name}: stopped by a fault of this tool ({type(problem).__name__}); {where}\n")
+        return 2
 
 
 def _is_file_name(text: str) -> bool:

@@ -61,6 +61,14 @@ VERDICT_WORDS: dict[VerdictWord, str] = {
     "more": "NOT ENOUGH YET",
 }
 
+AS_IT_STANDS: dict[VerdictWord, str] = {
+    "go": "nothing found against it",
+    "conditions": "could be added to, on conditions",
+    "stop": "not to be added to",
+    "more": "not known enough yet",
+}
+"""A verdict's words for a circuit to which nothing is added."""
+
 _WORST: dict[Outcome, int] = {"broken": 0, "cannot_tell": 1, "condition": 2, "holds": 3, "not_applicable": 4}
 
 

@@ -14,7 +14,9 @@ from fieldtool.quantities.show import plain, shorten
 
 __all__ = ["run"]
 
-EXAMPLE = "example: fieldtool history kitchen.json"
+EXAMPLE = """example: fieldtool history kitchen.json
+
+Exit code: 0 printed; 2 the file or the command is not usable."""
 
 
 def run(args: list[str], out: TextIO, err: TextIO) -> int:

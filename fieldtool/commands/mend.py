@@ -16,7 +16,10 @@ from fieldtool.jobfile.swap import generations
 __all__ = ["run"]
 
 _MOST_LINES = 20
-EXAMPLE = "example: fieldtool mend kitchen.json --restore 1 -o kitchen-mended.json"
+EXAMPLE = """example: fieldtool mend kitchen.json --restore 1 -o kitchen-mended.json
+
+Without --restore the file and its kept generations are only looked at.
+Exit code: 0 the file is good or a copy was made; 2 it is damaged, or nothing could be done."""
 
 
 def run(args: list[str], out: TextIO, err: TextIO) -> int:

@@ -13,7 +13,10 @@ from fieldtool.jobfile.problems import JobFileProblem, SaveProblem
 
 __all__ = ["run"]
 
-EXAMPLE = "example: fieldtool new kitchen.json --from facts.json"
+EXAMPLE = """example: fieldtool new kitchen.json --from facts.json
+
+fieldtool schema job says which names and values facts may have.
+Exit code: 0 made; 2 not made, and why."""
 
 
 def run(args: list[str], out: TextIO, err: TextIO) -> int:

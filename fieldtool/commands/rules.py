@@ -11,7 +11,9 @@ from fieldtool.rules.engine import catalogue
 
 __all__ = ["run"]
 
-EXAMPLE = "example: fieldtool rules --json"
+EXAMPLE = """example: fieldtool rules --json
+
+Exit code: 0 printed; 2 the command is not usable."""
 
 
 def run(args: list[str], out: TextIO, err: TextIO) -> int:

@@ -11,7 +11,9 @@ from fieldtool.reference.load import ReferenceProblem, Table, names, table
 
 __all__ = ["run"]
 
-EXAMPLE = "example: fieldtool tables flat_twin"
+EXAMPLE = """example: fieldtool tables flat_twin
+
+Exit code: 0 printed; 2 there is no such table, or the command is not usable."""
 
 
 def run(args: list[str], out: TextIO, err: TextIO) -> int:

@@ -17,7 +17,10 @@ from fieldtool.reference.load import ReferenceProblem
 
 __all__ = ["run"]
 
-EXAMPLE = "example: fieldtool verdict sample_jobs/larch_row.json --json"
+EXAMPLE = """example: fieldtool verdict sample_jobs/larch_row.json --json
+
+Exit code: 2 the file or the command is not usable; else 3 some proposal must stop; else 4 readings are missing or
+nothing is proposed; else 0. fieldtool schema verdict says what the JSON looks like."""
 
 
 def run(args: list[str], out: TextIO, err: TextIO) -> int:
@@ -48,14 +51,6 @@ def run(args: list[str], out: TextIO, err: TextIO) -> int:
     return int(body["exit"])
 
 
-_AS_IT_STANDS = {
-    "go": "nothing found against it",
-    "conditions": "could be added to, on conditions",
-    "stop": "not to be added to",
-    "more": "not known enough yet",
-}
-
-
 def _problem(code: str, sentence: str, as_json: bool, out: TextIO, err: TextIO) -> int:
     if as_json:
         said = {"contract": "fieldtool-verdict/1", "error": {"code": code, "sentence": sentence}}
@@ -65,7 +60,7 @@ def _problem(code: str, sentence: str, as_json: bool, out: TextIO, err: TextIO) 
 
 
 def _print(body: dict[str, Any], out: TextIO) -> None:
-    from fieldtool.answers import MARKS, VERDICT_WORDS
+    from fieldtool.answers import AS_IT_STANDS, MARKS, VERDICT_WORDS
     from fieldtool.quantities.show import plain
 
     out.write(f"{body['edition_note']}\n")
@@ -73,7 +68,7 @@ def _print(body: dict[str, Any], out: TextIO) -> None:
         reading = circuit["circuit_reading"]
         name = plain(circuit["name"])
         out.write(f"\n{name}: labelled {circuit['label_claims']}. {reading['sentence'] if reading else ''}\n".rstrip())
-        out.write(f"\n  as it stands: {_AS_IT_STANDS[circuit['existing']['verdict']]}\n")
+        out.write(f"\n  as it stands: {AS_IT_STANDS[circuit['existing']['verdict']]}\n")
         for proposal in circuit["proposals"]:
             word = VERDICT_WORDS[proposal["verdict"]]
             out.write(f"  {proposal['request']} by {proposal['way_words']}: {word}\n")

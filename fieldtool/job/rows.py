@@ -15,6 +15,8 @@ _HIDDEN = {"Cc", "Cf", "Cs", "Co", "Zl", "Zp"}
 
 
 def _shown(text: str) -> str:
+    if text.isascii() and text.isprintable():
+        return text
     for char in text:
         if unicodedata.category(char) in _HIDDEN and char != "\n":
             raise ValueError(f"holds the hidden character U+{ord(char):04X}; type it again without it")

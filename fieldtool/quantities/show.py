@@ -16,6 +16,7 @@ __all__ = [
     "cells",
     "decimal_of",
     "exceeds",
+    "folded",
     "number_text",
     "plain",
     "round_headroom_down_m",
@@ -206,6 +207,28 @@ def shorten(text: str, most: int) -> str:
             break
         kept.append(char)
     return "".join(kept) + "…"
+
+
+def folded(text: str, most: int, indent: str = "") -> list[str]:
+    """The text whole on as many lines of ``most`` cells as it takes, each with ``indent`` before it, broken at spaces
+    and inside a word that is longer than a line.
+
+    >>> folded("left of the hob", 9, "  "), folded("台所台所", 5)
+    (['  left of', '  the hob'], ['台所', '台所'])
+    """
+    room = max(most - cells(indent), 2)
+    lines = [""]
+    for word in text.split():
+        if lines[-1] and cells(lines[-1]) + 1 + cells(word) <= room:
+            lines[-1] += f" {word}"
+            continue
+        if lines[-1]:
+            lines.append("")
+        for char in word:
+            if cells(lines[-1] + char) > room:
+                lines.append("")
+            lines[-1] += char
+    return [indent + line for line in lines]
 
 
 def plain(text: str) -> str:

@@ -13,7 +13,16 @@ from fieldtool.rules.engine import run
 from fieldtool.rules.facts import Facts
 from fieldtool.ways.way import Edit, Refusal, Setting, Way
 
-__all__ = ["check", "decide", "edited", "existing_facts", "figures_of", "found_for", "readings_to_judge_under"]
+__all__ = [
+    "check",
+    "decide",
+    "edited",
+    "existing_facts",
+    "figures_of",
+    "found_for",
+    "readings_to_judge_under",
+    "verdict_of",
+]
 
 
 def decide(findings: tuple[Finding, ...]) -> VerdictWord:
@@ -37,7 +46,12 @@ def check(facts: Facts) -> Verdict:
     The existing circuit, a proposal, every way of adding, an override and the after-work prediction all come
     through here; there is no other judge.
     """
-    findings = _with_overrides(run(facts), facts.job, facts.request)
+    return verdict_of(facts, run(facts))
+
+
+def verdict_of(facts: Facts, found: tuple[Finding, ...]) -> Verdict:
+    """The verdict that the catalogue's answers make; ``found`` is what ``engine.run`` gave for these facts."""
+    findings = _with_overrides(found, facts.job, facts.request)
     missing: dict[tuple[str, str, str], Missing] = {}
     for finding in findings:
         if finding.outcome == "cannot_tell" and not finding.advice:

@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import replace
 
-from fieldtool.answers import CircuitReading, Verdict, WayAnswer
+from fieldtool.answers import CircuitReading, Verdict, VerdictWord, WayAnswer
 from fieldtool.job.job import Job
 from fieldtool.job.request import Request
 from fieldtool.rules.facts import Facts
@@ -13,9 +14,11 @@ from fieldtool.verdict.headroom import governing, headroom
 from fieldtool.verdict.predict import predict
 from fieldtool.ways.way import Refusal, Way, every_way
 
-__all__ = ["compare", "existing", "judge"]
+__all__ = ["RANK", "answer_of", "compare", "existing", "judge", "worse_of"]
 
-_RANK = {"go": 0, "conditions": 1, "more": 2, "stop": 3}
+RANK: dict[VerdictWord, int] = {"go": 0, "conditions": 1, "more": 2, "stop": 3}
+"""Verdicts from best to worst."""
+
 _LEAVE = 1.5
 
 
@@ -23,21 +26,26 @@ def existing(job: Job, circuit_id: str, reading: CircuitReading | None = None) -
     """The circuit as it stands, judged: under every explanation that still stands, the worse verdict."""
     return max(
         (check(existing_facts(job, circuit_id, under)) for under in readings_to_judge_under(reading)),
-        key=lambda verdict: _RANK[verdict.outcome],
+        key=lambda verdict: RANK[verdict.outcome],
     )
 
 
 def judge(job: Job, request: Request, way: Way, reading: CircuitReading | None = None) -> WayAnswer:
     """One way for one request: the verdict under the worse standing explanation, with all that goes with it."""
     answers = [_judge(job, request, way, under) for under in readings_to_judge_under(reading)]
-    return max(answers, key=lambda answer: (not answer.applies, _RANK[answer.outcome]))
+    return worse_of(answers)
+
+
+def worse_of(answers: Sequence[WayAnswer]) -> WayAnswer:
+    """The answer that counts of those under each standing explanation: one that does not serve, else the worst."""
+    return max(answers, key=lambda answer: (not answer.applies, RANK[answer.outcome]))
 
 
 def _judge(job: Job, request: Request, way: Way, reading: CircuitReading | None) -> WayAnswer:
     found = found_for(job, request.circuit, reading, request)
     facts = edited(job, request, way, found, reading=reading)
     if isinstance(facts, Refusal):
-        return WayAnswer(way.key, way.words, None, facts.reason, facts.applies, stopped_by=facts.reason)
+        return answer_of(way, facts)
     verdict = check(facts)
 
     def at_metres(metres: float) -> Facts | Refusal:
@@ -45,8 +53,16 @@ def _judge(job: Job, request: Request, way: Way, reading: CircuitReading | None)
 
     rooms = headroom(facts, at_metres, verdict.findings)
     verdict = replace(verdict, headroom=rooms, governing=governing(rooms), predicted=predict(facts))
+    return answer_of(way, facts, verdict)
+
+
+def answer_of(way: Way, facts: Facts | Refusal, verdict: Verdict | None = None) -> WayAnswer:
+    """A way's answer: why it is refused, or its verdict with what it takes to do it."""
+    if isinstance(facts, Refusal):
+        return WayAnswer(way.key, way.words, None, facts.reason, facts.applies, stopped_by=facts.reason)
     edit = facts.edit
     assert edit is not None
+    assert verdict is not None
     stopped = next((f for f in verdict.findings if f.outcome == "broken" and not f.advice), None)
     waits = verdict.missing[0].words if verdict.missing else ""
     return WayAnswer(
@@ -70,7 +86,7 @@ def compare(job: Job, request: Request, reading: CircuitReading | None = None) -
     order: dict[str, int] = {way.key: way.order for way in every_way()}
 
     def place(answer: WayAnswer) -> tuple[bool, float, bool, int, int]:
-        rank: float = _RANK[answer.outcome]
+        rank: float = RANK[answer.outcome]
         if answer.way == "leave_it" and rank < _LEAVE:
             # Nothing added is always possible: it stands behind every way that may be done.
             rank = _LEAVE

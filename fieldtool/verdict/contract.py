@@ -10,7 +10,7 @@ from math import isfinite
 from typing import Any
 
 from fieldtool import __version__
-from fieldtool.answers import CircuitReading, Finding, Headroom, Verdict, WayAnswer
+from fieldtool.answers import CircuitReading, Finding, Headroom, Verdict, VerdictWord, WayAnswer
 from fieldtool.diagnosis.explain import explain
 from fieldtool.job.job import Job
 from fieldtool.job.request import Request
@@ -18,7 +18,7 @@ from fieldtool.reference.edition import EDITION, EDITION_SENTENCE, RULE_SET
 from fieldtool.verdict.compare import compare, existing
 from fieldtool.ways.way import every_way
 
-__all__ = ["CONTRACT", "contract"]
+__all__ = ["CONTRACT", "contract", "exit_of", "proposed"]
 
 CONTRACT = "fieldtool-verdict/1"
 
@@ -35,13 +35,14 @@ def contract(job: Job, only: str | None = None) -> dict[str, Any]:
         "edition": EDITION,
         "edition_note": EDITION_SENTENCE,
         "job": job.site.name,
-        "exit": _exit(circuits),
+        "exit": exit_of([proposal["verdict"] for circuit in circuits for proposal in circuit["proposals"]]),
         "circuits": circuits,
     }
 
 
-def _exit(circuits: list[dict[str, Any]]) -> int:
-    words = [proposal["verdict"] for circuit in circuits for proposal in circuit["proposals"]]
+def exit_of(words: list[VerdictWord]) -> int:
+    """The exit code that a job's verdicts make: 3 some proposal must stop, else 4 readings are missing or nothing is
+    proposed, else 0."""
     if "stop" in words:
         return 3
     if not words or "more" in words:
@@ -58,12 +59,17 @@ def _circuit(job: Job, circuit_id: str) -> dict[str, Any]:
         "label_claims": circuit.label_claims,
         "circuit_reading": _reading(reading),
         "existing": _verdict(existing(job, circuit_id, reading)),
-        "proposals": [
-            _proposal(job, request, reading)
-            for request in job.requests
-            if request.circuit == circuit_id and (request.outlets or request.swap is not None)
-        ],
+        "proposals": [_proposal(job, request, reading) for request in proposed(job, circuit_id)],
     }
+
+
+def proposed(job: Job, circuit_id: str) -> tuple[Request, ...]:
+    """The requests on a circuit that ask for something: an outlet, or a swap."""
+    return tuple(
+        request
+        for request in job.requests
+        if request.circuit == circuit_id and (request.outlets or request.swap is not None)
+    )
 
 
 def _reading(reading: CircuitReading) -> dict[str, Any]:

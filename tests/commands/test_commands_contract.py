@@ -114,7 +114,8 @@ def test_every_command_has_help_with_an_example(command: str) -> None:
         [sys.executable, "-m", "fieldtool", command, "--help"], capture_output=True, text=True, check=False
     )
     assert done.returncode == 0
-    assert "example: fieldtool" in done.stdout
+    assert f"example: fieldtool {command}" in done.stdout
+    assert "Exit code: " in done.stdout
 
 
 def test_without_a_terminal_the_app_says_so_in_one_line() -> None:
