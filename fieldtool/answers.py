@@ -231,7 +231,8 @@ class Explanation:
     """One thing the circuit could be. Explanations with the same ``group`` cannot be told apart by these readings.
 
     ``stops_ring`` is True where ring-based ways wait until it is settled; ``predicted`` pairs each reading's cell
-    with the value this explanation gives.
+    with the value this explanation gives. ``stands`` is False where the leading explanation is more than twenty
+    times as likely: it is shown, and nothing waits for it.
     """
 
     id: str
@@ -245,6 +246,7 @@ class Explanation:
     stops_ring: bool = False
     danger: bool = False
     healthy: bool = False
+    stands: bool = True
 
 
 @dataclass(frozen=True, slots=True)

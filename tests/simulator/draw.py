@@ -179,8 +179,8 @@ def _probe(drawn: Drawn, point: str, other: str) -> tuple[Node, Node]:
 
 
 def _zs(drawn: Drawn, bars: list[Join]) -> list[float]:
-    line = shown(drawn.wires, bars, [(("L", p), ("L", "A")) for p in drawn.points])
-    earth = shown(drawn.wires, bars, [(("E", p), ("E", "A")) for p in drawn.points])
+    both = shown(drawn.wires, bars, [((c, p), (c, "A")) for c in "LE" for p in drawn.points])
+    line, earth = both[: len(drawn.points)], both[len(drawn.points) :]
     paths = drawn.truth.get("parallel", {})
     out = []
     for point, one, two in zip(drawn.points, line, earth, strict=True):

@@ -266,6 +266,7 @@ def _leads_points(drawn: Drawn) -> None:
 def _parallel(drawn: Drawn) -> None:
     low = drawn.rng.uniform(0.02, 0.08)
     drawn.gaps = [gap * max(1.0, 40.0 / sum(drawn.gaps)) for gap in drawn.gaps]
+    drawn.tests = ("ends", "ln_cross", "le_cross", "r1_r2", "zs", "ir")
     _lay_again(drawn, lambda c, _: drawn.sizes[1] if c == "E" else drawn.sizes[0])
     drawn.truth["parallel"] = dict.fromkeys(drawn.points, low)
 

@@ -33,15 +33,15 @@ def shown(wires: nx.MultiGraph, joins: Iterable[Join], pairs: Sequence[tuple[Nod
             graph.add_edge(root(a), root(b), siemens=1.0 / max(ohm, 1e-7))
     found: dict[Node, tuple[int, int, np.ndarray]] = {}
     for number, island in enumerate(nx.connected_components(graph)):
-        nodes = sorted(island)
-        if len(nodes) == 1:
-            found[nodes[0]] = (number, 0, np.zeros((1, 1)))
-            continue
-        laplacian = nx.laplacian_matrix(graph, nodelist=nodes, weight="siemens").toarray()
-        z = np.zeros((len(nodes), len(nodes)))
+        place = {node: index for index, node in enumerate(island)}
+        laplacian = np.zeros((len(place), len(place)))
+        for a, b, siemens in graph.edges(place, data="siemens"):
+            i, j = place[a], place[b]
+            laplacian[[i, j], [i, j]] += siemens
+            laplacian[[i, j], [j, i]] -= siemens
+        z = np.zeros_like(laplacian)
         z[1:, 1:] = np.linalg.inv(laplacian[1:, 1:])
-        for place, node in enumerate(nodes):
-            found[node] = (number, place, z)
+        found |= {node: (number, index, z) for node, index in place.items()}
     out = []
     for a, b in pairs:
         one, i, z = found[root(a)]
