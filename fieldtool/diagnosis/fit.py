@@ -17,7 +17,8 @@ from fieldtool.diagnosis.frame import Array, Frame
 __all__ = ["OPEN_BUT_FITS", "READS_BUT_OPEN", "Fit", "fit"]
 
 OPEN_BUT_FITS = 6.0
-"""What it costs an explanation that a reading is open where it expects a number: a slip or a fault at that point."""
+"""What it costs an explanation that a reading is open where it expects a number: a slip or a fault at that point.
+Twice that for an end-to-end reading, where a clip has to be off."""
 
 READS_BUT_OPEN = 14.0
 """What it costs that a number was read through a break."""
@@ -51,7 +52,7 @@ def fit(frame: Frame, specs: Specs, start: Array, hidden: NDArray[np.bool_] | No
     through = (frame.seen & ~frame.gone)[None, :] & open_here
     if hidden is not None:
         used, clash, through = used & ~hidden, clash & ~hidden, through & ~hidden
-    constant = OPEN_BUT_FITS * clash.sum(axis=1) + READS_BUT_OPEN * through.sum(axis=1)
+    constant = OPEN_BUT_FITS * (clash.sum(axis=1) + clash[:, :3].sum(axis=1)) + READS_BUT_OPEN * through.sum(axis=1)
     at = start.copy()
     eye = np.eye(wide)
     scale = np.where(used, 1.0 / frame.sigma, 0.0)

@@ -91,7 +91,7 @@ def search(frame: Frame, evidence: Evidence) -> list[Fitted]:
     if all(item.shape.id != "intact_ring" for item in best):
         best.append(next(item for item in first if item.shape.id == "intact_ring"))
     spurred = _spurs(frame, evidence, best)
-    spurred = [item for item in spurred if item.shape.spurs]
+    spurred = sorted((item for item in spurred if item.shape.spurs), key=lambda item: -item.score)
     found = [*spurred, *first, *_single_points(frame, evidence, [*spurred, *best])]
     found.sort(key=lambda item: -item.score)
     ring = next(item for item in found if item.shape.id == "intact_ring")
@@ -110,7 +110,7 @@ def _likely_opens(frame: Frame, evidence: Evidence) -> list[Shape]:
     gone = np.isinf(shown)
     clash = (gone != frame.gone[None, :]) & frame.seen[None, :]
     left = np.where(gone, 0.0, (frame.y - np.where(gone, 0.0, shown)) / 0.1) * (frame.seen & ~frame.gone)
-    order = (20.0 * clash.sum(axis=1) + np.minimum(left**2, 25).sum(axis=1)).argsort(kind="stable")
+    order = (60.0 * clash.sum(axis=1) + np.minimum(left**2, 25).sum(axis=1)).argsort(kind="stable")
     return [shapes[int(number)] for number in order[:12]]
 
 
@@ -204,7 +204,8 @@ def _single_points(frame: Frame, evidence: Evidence, items: Sequence[Fitted]) ->
     """The best ring and slips again, without the readings of the one point that fits worst."""
     shapes: list[Shape] = []
     warm: list[Fitted] = []
-    for item in items[:2]:
+    ring = [item for item in items if item.shape.id == "intact_ring"]
+    for item in [*ring[:2], *(item for item in items[:1] if item not in ring)]:
         for hidden, name in _misfits(frame, evidence, item):
             prior = item.shape.prior + COMMON[name] - log(max(1, frame.count))
             prior += 8.0 if name == "worn_contact" and _unsteady(frame, evidence, hidden) else 0.0

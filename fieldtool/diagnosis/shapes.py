@@ -216,6 +216,8 @@ def start_of(frame: Frame, evidence: Evidence, shapes: Sequence[Shape], specs: S
     at = np.zeros((rows, wide))
     ends = [value for value in (evidence.r1, evidence.rn) if value is not None and 0 < value < inf]
     crossed = [value for value in evidence.ln.values() if 0 < value < inf]
+    if not ends and evidence.r2 is not None and 0 < evidence.r2 < inf:
+        ends = [evidence.r2 / frame.ratio]
     total = min(ends) if ends else 2 * float(np.median(crossed)) if crossed else 55.0 * frame.line_per_m
     at[:, LOG_T] = np.clip((log(max(total, 1e-3)) - specs.mean[:, LOG_T]) / specs.spread[:, LOG_T], -4, 4)
     r2 = evidence.r2
