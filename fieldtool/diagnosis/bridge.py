@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from fieldtool.diagnosis.chain import FIXED, GAP_SPREAD, LINK, LOG_T, Specs
+from fieldtool.diagnosis.chain import FIXED, GAP_SPREAD, LINK, LOG_T, Specs, predict
 from fieldtool.diagnosis.evidence import Evidence
 from fieldtool.diagnosis.frame import Array, Frame
 from fieldtool.diagnosis.shapes import COMMON, Shape, specs_of
@@ -23,8 +23,8 @@ if TYPE_CHECKING:
 
 __all__ = ["bridges"]
 
-REFINED = 10
-"""How many pairs are refined after the first step."""
+BEGUN, REFINED = 20, 5
+"""How many pairs are fitted at all, and how many to the end."""
 
 Fitter = Callable[..., "list[Fitted]"]
 
@@ -40,10 +40,25 @@ def bridges(frame: Frame, evidence: Evidence, ring: Shape, best: Fitted, fitted:
         replace(ring, id="bridged_ring", prior=prior, link=pair, spurs=best.shape.spurs - _inside(frame, pair))
         for pair in pairs
     ]
-    first = fitted(frame, evidence, shapes, steps=1, start=_start(frame, best, shapes))
+    start = _start(frame, best, shapes)
+    near = _nearest(frame, shapes, start)
+    shapes = [shapes[row] for row in near]
+    first = fitted(frame, evidence, shapes, steps=2, start=_start(frame, best, shapes))
     order = sorted(range(len(first)), key=lambda row: -first[row].score)[:REFINED]
     kept = [shapes[row] for row in order]
-    return fitted(frame, evidence, kept, steps=4, start=_again(frame, kept, [first[row] for row in order]))
+    return fitted(frame, evidence, kept, steps=3, start=_again(frame, kept, [first[row] for row in order]))
+
+
+def _nearest(frame: Frame, shapes: Sequence[Shape], start: Array) -> list[int]:
+    """The pairs whose start, from the physics alone, lies nearest to the readings."""
+    if len(shapes) <= BEGUN:
+        return list(range(len(shapes)))
+    shown = predict(frame, specs_of(frame, shapes), start[:, None, :])[:, 0]
+    left = np.where(frame.seen & ~frame.gone & np.isfinite(shown), (frame.y - shown) / frame.sigma, 0.0)
+    cost = np.minimum(left**2, 30.0).sum(axis=1) - 2 * np.array(
+        [shape.prior - 3.5 * len(shape.spurs) for shape in shapes]
+    )
+    return [int(row) for row in cost.argsort(kind="stable")[:BEGUN]]
 
 
 def _inside(frame: Frame, pair: tuple[int, int]) -> frozenset[int]:
@@ -87,7 +102,7 @@ def _one_start(
     rest = total - begin - short
     old = total - float(x[b])
     tail = (x[b:] - float(x[b])) * (min(old, rest) / max(old, 1e-6))
-    places[b:] = begin + length + max(rest - old, 0.0) * 0.0 + tail
+    places[b:] = begin + length + tail
     whole = total - short + length
     gaps = np.maximum(np.diff(np.concatenate(([0.0], places, [whole]))), 0.004 * whole)
     runs = len(gaps)

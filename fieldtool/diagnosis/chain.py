@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 
 from fieldtool.diagnosis.frame import Array, Frame
 
-__all__ = ["CROSSED", "ONE", "SAME", "TWO", "Specs", "Thetas", "predict", "width"]
+__all__ = ["CROSSED", "ONE", "SAME", "TWO", "Specs", "Thetas", "live_columns", "places_by_gaps", "predict", "width"]
 
 CROSSED, SAME, ONE, TWO = 0, 1, 2, 3
 """How the ends were joined: as they should be, each leg to itself, only one of the two joins (either)."""
@@ -72,6 +72,37 @@ class Specs:
         )
 
 
+def live_columns(specs: Specs) -> list[int]:
+    """The parameters of a whole ring that do anything in at least one of these explanations."""
+    out = [column for column in (LOG_T, RATIO, NEUTRAL, ZERO, ZERO_POINTS, LOOP) if specs.spread[:, column].any()]
+    used = ((JOINT, specs.joint_run), (LINK, specs.link), (PART, specs.mixed))
+    return sorted(out + [column for column, where in used if where.max() >= 0])
+
+
+def places_by_gaps(frame: Frame, specs: Specs, standard: Array) -> Array:
+    """How far each gap's and each free place's standardised parameter moves each point [ohm of line].
+
+    (explanations, points, parameters of the gaps and free places).
+    """
+    theta = specs.mean + specs.spread * standard
+    total = np.exp(theta[:, LOG_T])
+    runs, count = len(frame.chain) + 1, frame.count
+    out = np.zeros((len(theta), count, runs + len(frame.free)))
+    gaps = np.exp(theta[:, FIXED : FIXED + runs])
+    part = gaps / gaps.sum(axis=1, keepdims=True)
+    reached = np.cumsum(part, axis=1)[:, :-1]
+    before = np.tri(runs - 1, runs)[None]
+    if frame.chain:
+        out[:, list(frame.chain), :runs] = part[:, None, :] * (before - reached[:, :, None])
+    for column, point in enumerate(frame.free):
+        share = 1.0 / (1.0 + np.exp(-theta[:, FIXED + runs + column]))
+        out[:, point, runs + column] = share * (1 - share)
+    for point, parent in frame.copies:
+        out[:, point] = out[:, parent]
+    spread = specs.spread[:, FIXED : FIXED + runs + len(frame.free)]
+    return np.asarray(out * total[:, None, None] * spread[:, None, :], dtype=np.float64)
+
+
 def width(frame: Frame, spurs: int) -> int:
     """How many parameters an explanation has."""
     return FIXED + len(frame.chain) + 1 + len(frame.free) + spurs
@@ -94,11 +125,15 @@ def _places(frame: Frame, theta: Array, total: Array) -> tuple[Array, Array]:
     return x, ends - gaps / 2
 
 
-def predict(frame: Frame, specs: Specs, standard: Thetas) -> Array:
+def predict(
+    frame: Frame, specs: Specs, standard: Thetas, nudge: tuple[Array, Array] | None = None, *, full: bool = False
+) -> Array:
     """Every reading [ohm] for each explanation and each set of standardised parameters.
 
     ``standard`` is (explanations, sets, parameters); the answer (explanations, sets, readings). Infinite where it
-    reads open.
+    reads open. ``nudge`` moves, set by set, every point along the ring and every spur's end [ohm of line]: what that
+    does to a reading is its own slope, since a reading depends on no other point's place. Tests that were not taken
+    are left at zero unless ``full``.
     """
     theta = specs.mean[:, None, :] + specs.spread[:, None, :] * standard
     total = np.exp(theta[..., LOG_T])
@@ -107,22 +142,33 @@ def predict(frame: Frame, specs: Specs, standard: Thetas) -> Array:
     if specs.spurs:
         tail = theta[..., theta.shape[-1] - len(specs.spurs) :]
         spur[..., list(specs.spurs)] = tail
-    linked = specs.link[:, 0] >= 0
-    if linked.any():
+    if nudge is not None:
+        x = x + nudge[0][:, None]
+        spur = spur + nudge[1][:, None]
+    if (specs.link[:, 0] >= 0).any():
         x, spur, total, middles = _bridge(frame, specs, theta, x, spur, total, middles)
     near, far, ends = _conductors(specs, theta, x, middles, total)
-    out = np.empty((*x.shape[:2], 3 + 5 * frame.count))
-    out[..., :3] = ends + theta[..., ZERO, None]
     count = frame.count
+    out = np.zeros((*x.shape[:2], 3 + 5 * count))
+    out[..., :3] = ends + theta[..., ZERO, None]
     ratio, neutral = np.exp(theta[..., RATIO, None]), np.exp(theta[..., NEUTRAL, None])
     zero = (theta[..., ZERO] + theta[..., ZERO_POINTS])[..., None]
+    with_n, with_e = spur * (1 + neutral), spur * (1 + ratio)
+    taken = (True,) * 5 if full else frame.taken
+    blocks = [out[..., 3 + block * count : 3 + (block + 1) * count] for block in range(5)]
     with np.errstate(divide="ignore"):
-        out[..., 3 : 3 + count] = _crossed(near, far, 1, specs.join_ln) + spur * (1 + neutral) + zero
-        out[..., 3 + count : 3 + 2 * count] = _crossed(near, far, 2, specs.join_le) + spur * (1 + ratio) + zero
-        line, other, cpc = (_service(near[c], far[c], specs.off) for c in range(3))
-    out[..., 3 + 2 * count : 3 + 3 * count] = line + cpc + spur * (1 + ratio) + zero
-    out[..., 3 + 3 * count : 3 + 4 * count] = line + other + spur * (1 + neutral) + zero
-    out[..., 3 + 4 * count :] = line + cpc + spur * (1 + ratio) + theta[..., LOOP, None]
+        if taken[0]:
+            blocks[0][...] = _crossed(near, far, 1, specs.join_ln) + with_n + zero
+        if taken[1]:
+            blocks[1][...] = _crossed(near, far, 2, specs.join_le) + with_e + zero
+        if any(taken[2:]):
+            line = _service(near[0], far[0], specs.off)
+            if taken[2] or taken[4]:
+                loop = line + _service(near[2], far[2], specs.off) + with_e
+                blocks[2][...] = loop + zero
+                blocks[4][...] = loop + theta[..., LOOP, None]
+            if taken[3]:
+                blocks[3][...] = line + _service(near[1], far[1], specs.off) + with_n + zero
     return out
 
 

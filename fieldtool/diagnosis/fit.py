@@ -11,7 +11,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldtool.diagnosis.chain import Specs, predict
+from fieldtool.diagnosis.chain import FIXED, Specs, live_columns, places_by_gaps, predict
 from fieldtool.diagnosis.frame import Array, Frame
 
 __all__ = ["OPEN_BUT_FITS", "READS_BUT_OPEN", "Fit", "fit"]
@@ -59,11 +59,11 @@ def fit(frame: Frame, specs: Specs, start: Array, hidden: NDArray[np.bool_] | No
     tries = np.array([1.0, 0.5, 0.2, 0.05])
     slope = np.zeros((rows, used.shape[1], wide))
     for step in range(steps + 1):
-        left, slope = _linear(frame, specs, at, scale, eye)
+        left, slope = _linear(frame, specs, at, scale)
         if step == steps:
             break
-        hessian = np.einsum("brp,brq->bpq", slope, slope) + eye
-        pull = np.einsum("brp,br->bp", slope, left) - at
+        hessian = np.swapaxes(slope, 1, 2) @ slope + eye
+        pull = (np.swapaxes(slope, 1, 2) @ left[..., None])[..., 0] - at
         move = np.clip(np.linalg.solve(hessian, pull[..., None])[..., 0], -2.5, 2.5)
         trial = at[:, None, :] + tries[None, :, None] * move[:, None, :]
         cost = _cost(frame, specs, trial, scale)
@@ -71,11 +71,11 @@ def fit(frame: Frame, specs: Specs, start: Array, hidden: NDArray[np.bool_] | No
         best = cost.argmin(axis=1)
         better = cost[np.arange(rows), best] < now
         at = np.where(better[:, None], trial[np.arange(rows), best], at)
-    hessian = np.einsum("brp,brq->bpq", slope, slope) + eye
+    hessian = np.swapaxes(slope, 1, 2) @ slope + eye
     chi2 = (left**2).sum(axis=1)
     _, logdet = np.linalg.slogdet(hessian)
     evidence = -0.5 * chi2 - 0.5 * (at**2).sum(axis=1) - 0.5 * logdet - constant
-    shown = predict(frame, specs, at[:, None, :])[:, 0]
+    shown = predict(frame, specs, at[:, None, :], full=True)[:, 0]
     return Fit(at, shown, np.nan_to_num(evidence, nan=-1e9, neginf=-1e9), chi2, used, hessian)
 
 
@@ -89,9 +89,32 @@ def _cost(frame: Frame, specs: Specs, trial: Array, scale: Array) -> Array:
     return np.asarray((left**2).sum(axis=2) + (trial**2).sum(axis=2), dtype=np.float64)
 
 
-def _linear(frame: Frame, specs: Specs, at: Array, scale: Array, eye: Array) -> tuple[Array, Array]:
+def _linear(frame: Frame, specs: Specs, at: Array, scale: Array) -> tuple[Array, Array]:
     """What is left of each reading, and how each parameter would move it, both in standard deviations."""
-    moved = np.concatenate((at[:, None, :], at[:, None, :] + _STEP * eye[None, :, :]), axis=1)
-    left = _residual(frame, predict(frame, specs, moved), scale)
-    slope = (left[:, :1, :] - left[:, 1:, :]) / _STEP
-    return left[:, 0], np.swapaxes(slope, 1, 2)
+    columns = live_columns(specs)
+    rows, wide = at.shape
+    linked = bool((specs.link[:, 0] >= 0).any())
+    if linked:
+        columns = columns + list(range(FIXED, wide))
+    many = 1 + len(columns) + (0 if linked else 2)
+    moved = np.repeat(at[:, None, :], many, axis=1)
+    for number, column in enumerate(columns, start=1):
+        moved[:, number, column] += _STEP
+    nudge = np.zeros((2, many))
+    if not linked:
+        nudge[0, -2] = nudge[1, -1] = _STEP
+    left = _residual(frame, predict(frame, specs, moved, (nudge[0], nudge[1])), scale)
+    change = (left[:, :1, :] - left[:, 1:, :]) / _STEP
+    slope = np.zeros((rows, left.shape[2], wide))
+    slope[:, :, columns] = np.swapaxes(change[:, : len(columns)], 1, 2)
+    if not linked:
+        count = frame.count
+        moves = places_by_gaps(frame, specs, at)
+        by_place = change[:, -2, 3:].reshape(rows, 5, count, 1)
+        last = FIXED + moves.shape[2]
+        slope[:, 3:, FIXED:last] = (by_place * moves[:, None]).reshape(rows, 5 * count, -1)
+        by_spur = change[:, -1, 3:].reshape(rows, 5, count)
+        for column, point in enumerate(specs.spurs, start=last):
+            slots = 3 + np.arange(5) * count + point
+            slope[:, slots, column] = by_spur[:, :, point] * specs.spread[:, column, None]
+    return left[:, 0], slope

@@ -67,6 +67,12 @@ class Frame:
         """Number of points."""
         return len(self.points)
 
+    @property
+    def taken(self) -> tuple[bool, ...]:
+        """Which tests at points have readings to fit."""
+        blocks = self.seen[3:].reshape(5, self.count)
+        return tuple(bool(block.any()) for block in blocks)
+
     def slot(self, test: str, point: int = 0) -> int:
         """Index of a reading in ``y``."""
         if test in ("r1", "rn", "r2"):

@@ -23,7 +23,7 @@ LEAST_SPUR_M = 0.3
 LEAST_GAIN, ASK_AGAIN = 3.0, 7.0
 """Chi-squared that a spur must take away to be tried: the first, and one after another was refused."""
 
-KEPT = 4
+KEPT = 3
 """How many kinds of explanation are given spurs."""
 
 
@@ -83,15 +83,18 @@ def search(frame: Frame, evidence: Evidence) -> list[Fitted]:
     """Every shape worth comparing, fitted, best first."""
     shapes = [*simple(frame, evidence), *_likely_opens(frame, evidence)]
     first = sorted(fitted(frame, evidence, shapes), key=lambda item: -item.score)
-    best: list[Fitted] = []
-    for item in first:
-        alike = sum(other.shape.id == item.shape.id for other in best)
-        if alike < 1 and len(best) < KEPT and item.score > first[0].score - 400:
-            best.append(item)
-    if all(item.shape.id != "intact_ring" for item in best):
-        best.append(next(item for item in first if item.shape.id == "intact_ring"))
-    spurred = _spurs(frame, evidence, best)
-    spurred = sorted((item for item in spurred if item.shape.spurs), key=lambda item: -item.score)
+    ring = next(item for item in first if item.shape.id == "intact_ring")
+    best = [ring]
+    more = _spurs(frame, evidence, [ring])
+    if ring is not first[0] or any(item.shape.spurs and item.score > ring.score for item in more):
+        others: list[Fitted] = []
+        for item in first:
+            named = {other.shape.id for other in (ring, *others)}
+            if item.shape.id not in named and len(others) < KEPT and item.score > first[0].score - 400:
+                others.append(item)
+        more += _spurs(frame, evidence, others)
+        best += others
+    spurred = sorted((item for item in more if item.shape.spurs), key=lambda item: -item.score)
     found = [*spurred, *first, *_single_points(frame, evidence, [*spurred, *best])]
     found.sort(key=lambda item: -item.score)
     ring = next(item for item in found if item.shape.id == "intact_ring")
