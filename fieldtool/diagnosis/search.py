@@ -23,6 +23,9 @@ LEAST_SPUR_M = 0.3
 LEAST_GAIN, ASK_AGAIN = 3.0, 7.0
 """Chi-squared that a spur must take away to be tried: the first, and one after another was refused."""
 
+FAR = 8.0
+"""Log weight by which a ring with spurs must lead everything without before the others are given spurs too."""
+
 KEPT = 3
 """How many kinds of explanation are given spurs."""
 
@@ -86,7 +89,7 @@ def search(frame: Frame, evidence: Evidence) -> list[Fitted]:
     ring = next(item for item in first if item.shape.id == "intact_ring")
     best = [ring]
     more = _spurs(frame, evidence, [ring])
-    if ring is not first[0] or any(item.shape.spurs and item.score > ring.score for item in more):
+    if not _settled(frame, ring, first[0], more):
         others: list[Fitted] = []
         for item in first:
             named = {other.shape.id for other in (ring, *others)}
@@ -101,6 +104,14 @@ def search(frame: Frame, evidence: Evidence) -> list[Fitted]:
     if ring.shape.spurs and len(frame.chain) >= 3 and ring.score > found[0].score - 60:
         found += bridges(frame, evidence, ring.shape, ring, fitted)
     return sorted(found, key=lambda item: -item.score)
+
+
+def _settled(frame: Frame, ring: Fitted, leader: Fitted, spurred: Sequence[Fitted]) -> bool:
+    """True where a sound ring, with a few spurs at most, fits well and nothing simpler comes near it."""
+    best = max((ring, *spurred), key=lambda item: item.score)
+    if best.chi2 > best.used + 2.0 * (2.0 * best.used) ** 0.5 or len(best.shape.spurs) > frame.count / 3 + 1:
+        return False
+    return leader is ring if not best.shape.spurs else best.score > leader.score + FAR or leader is ring
 
 
 def _likely_opens(frame: Frame, evidence: Evidence) -> list[Shape]:
@@ -229,7 +240,8 @@ def _misfits(frame: Frame, evidence: Evidence, item: Fitted) -> list[tuple[froze
     finite = frame.seen & ~frame.gone & np.isfinite(item.shown)
     left = np.where(finite, np.abs(frame.y - np.where(np.isfinite(item.shown), item.shown, 0.0)) / frame.sigma, 0.0)
     blocks = left[3:].reshape(5, frame.count)
-    suspects = set(item.shape.spurs - {point for point, _ in frame.copies})
+    spurs = item.shape.spurs - {point for point, _ in frame.copies}
+    suspects = {point for point in spurs if blocks[:, point].max() > 2}
     suspects |= {int(point) for point in np.flatnonzero((blocks > 4).any(axis=0))}
     suspects |= {frame.points.index(point) for point in evidence.unsteady if point in frame.points}
     ranked = sorted(suspects, key=lambda point: -float(blocks[:, point].max()))[:6]

@@ -11,11 +11,12 @@ from tests.simulator.draw import OHM_PER_M, Drawn, sound, take
 
 @dataclass(frozen=True)
 class Fault:
-    """A fault, the ids that name its class, and how it is drawn."""
+    """A fault, the ids that name its class, how it is drawn, and what else is true of such a circuit."""
 
     key: str
     names: frozenset[str]
-    draw: Callable[[str], Drawn]
+    draw: Callable[[str, int | None], Drawn]
+    true_too: frozenset[str] = frozenset()
 
 
 FAULTS: dict[str, Fault] = {}
@@ -23,16 +24,17 @@ FAULTS: dict[str, Fault] = {}
 Change = Callable[[Drawn], None]
 
 
-def fault(key: str, *names: str, **how: Any) -> Callable[[Change], Change]:
+def fault(key: str, *names: str, true_too: str = "", **how: Any) -> Callable[[Change], Change]:
     """Put a fault in the catalogue; ``how`` goes to the drawing of the sound circuit."""
 
     def keep(change: Change) -> Change:
-        def draw(seed: str) -> Drawn:
-            drawn = sound(key, f"{key} {seed}", **how)
+        def draw(seed: str, points: int | None = None) -> Drawn:
+            exactly = {} if points is None else {"least": points, "most": points}
+            drawn = sound(key, f"{key} {seed}", **how | exactly)
             change(drawn)
             return take(drawn)
 
-        FAULTS[key] = Fault(key, frozenset(names), draw)
+        FAULTS[key] = Fault(key, frozenset(names), draw, frozenset(true_too.split()))
         return change
 
     return keep
@@ -262,7 +264,7 @@ def _leads_points(drawn: Drawn) -> None:
     drawn.lead_points = drawn.rng.uniform(0.08, 0.3)
 
 
-@fault("parallel earth path", "parallel_earth_path")
+@fault("parallel earth path", "parallel_earth_path", true_too="intact_ring")
 def _parallel(drawn: Drawn) -> None:
     low = drawn.rng.uniform(0.02, 0.08)
     drawn.gaps = [gap * max(1.0, 40.0 / sum(drawn.gaps)) for gap in drawn.gaps]
@@ -346,9 +348,9 @@ def _after(drawn: Drawn) -> None:
                 row["value"] = round(drawn.rng.uniform(0.05, 3.0), 2)
 
 
-def draw(key: str, seed: str) -> Drawn:
-    """One circuit with this fault, all its readings taken."""
-    drawn = FAULTS[key].draw(seed)
+def draw(key: str, seed: str, points: int | None = None) -> Drawn:
+    """One circuit with this fault, all its readings taken; with so many points where that is given."""
+    drawn = FAULTS[key].draw(seed, points)
     if "after" in drawn.truth:
         _after(drawn)
     again = drawn.truth.get("again")
