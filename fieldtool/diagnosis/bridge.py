@@ -29,21 +29,27 @@ BEGUN, REFINED = 20, 5
 Fitter = Callable[..., "list[Fitted]"]
 
 
-def bridges(frame: Frame, evidence: Evidence, ring: Shape, best: Fitted, fitted: Fitter) -> list[Fitted]:
-    """The links that come nearest to the readings, fitted."""
+def bridges(frame: Frame, evidence: Evidence, best: Fitted, excess: Array, fitted: Fitter) -> list[Fitted]:
+    """The links that come nearest to the readings, fitted.
+
+    ``best`` is the ring with the spurs that it would have instead; ``excess`` how far each point of the chain lies
+    off that ring [ohm of line].
+    """
+    ring = best.shape
     pairs = [(a, b) for a in range(len(frame.chain)) for b in range(a + 2, len(frame.chain))]
-    pairs = [pair for pair in pairs if _inside(frame, pair) & best.shape.spurs]
+    prior = COMMON["bridged_ring"] - log(max(1, len(pairs)))
+    usual = float(excess.mean())
+    pairs = [(a, b) for a, b in pairs if excess[a + 1 : b].mean() > usual]
     if not pairs:
         return []
-    prior = COMMON["bridged_ring"] - log(len(pairs))
     shapes = [
         replace(ring, id="bridged_ring", prior=prior, link=pair, spurs=best.shape.spurs - _inside(frame, pair))
         for pair in pairs
     ]
-    start = _start(frame, best, shapes)
+    start = _start(frame, best, excess, shapes)
     near = _nearest(frame, shapes, start)
     shapes = [shapes[row] for row in near]
-    first = fitted(frame, evidence, shapes, steps=2, start=_start(frame, best, shapes))
+    first = fitted(frame, evidence, shapes, steps=2, start=_start(frame, best, excess, shapes))
     order = sorted(range(len(first)), key=lambda row: -first[row].score)[:REFINED]
     kept = [shapes[row] for row in order]
     return fitted(frame, evidence, kept, steps=3, start=_again(frame, kept, [first[row] for row in order]))
@@ -65,7 +71,7 @@ def _inside(frame: Frame, pair: tuple[int, int]) -> frozenset[int]:
     return frozenset(frame.chain[pair[0] + 1 : pair[1]])
 
 
-def _start(frame: Frame, best: Fitted, shapes: Sequence[Shape]) -> Array:
+def _start(frame: Frame, best: Fitted, excess: Array, shapes: Sequence[Shape]) -> Array:
     """Places and lengths that turn the spurs seen inside each link into what the link itself would do."""
     specs = specs_of(frame, shapes)
     at = np.zeros_like(specs.mean)
@@ -74,7 +80,6 @@ def _start(frame: Frame, best: Fitted, shapes: Sequence[Shape]) -> Array:
     gaps = np.exp(best.theta[FIXED : FIXED + runs])
     gaps = gaps / gaps.sum() * total
     x = np.cumsum(gaps)[:-1]
-    excess = np.array([max(0.0, best.spur_ohm(point)[0]) for point in frame.chain])
     for row, shape in enumerate(shapes):
         _one_start(frame, specs, at, row, shape, x, excess, total)
         _keep_spurs(specs, at, row, shape, best)

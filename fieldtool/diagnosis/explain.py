@@ -123,13 +123,19 @@ def _with_loops(
         point = frame.cell(slot)[1]
         over = float(frame.y[slot] - best.shown[slot])
         key = "high_loop" if over > 0 else "parallel_earth_path"
-        return [_loop_words(evidence, shape[0], key, odds_of(items, 0), over, point), *shape]
+        return [_loop_words(evidence, shape[0], key, _lesser(odds_of(items, 0), shape[0].odds), over, point), *shape]
     over = float(np.median((frame.y - ranked[0].best.shown)[frame.live]))
     if key == "high_loop" and evidence.no_trip and over < 0.6:
         key = "no_trip_mode"
-    told = _loop_words(evidence, shape[0], key, odds_of(items, 0), over, "")
+    told = _loop_words(evidence, shape[0], key, _lesser(odds_of(items, 0), shape[0].odds), over, "")
     alike = [replace(told, id=name, sentence=words) for name, words in ALIKE.get(key, ())]
     return [told, *alike, *shape]
+
+
+def _lesser(one: Odds, other: Odds) -> Odds:
+    """The more careful of two odds: nothing built on the ring is surer than the ring."""
+    order: tuple[Odds, ...] = ("almost_certainly", "probably", "could_be")
+    return max(one, other, key=order.index)
 
 
 def _loop_words(evidence: Evidence, ring: Explanation, key: str, odds: Odds, over: float, point: str) -> Explanation:

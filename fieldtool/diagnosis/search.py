@@ -23,6 +23,9 @@ LEAST_SPUR_M = 0.3
 LEAST_GAIN, ASK_AGAIN = 3.0, 7.0
 """Chi-squared that a spur must take away to be tried: the first, and one after another was refused."""
 
+IN_A_ROW = 2.5
+"""Standard deviations by which neighbours together must stand above the ring before a link is tried."""
+
 FAR = 8.0
 """Log weight by which a ring with spurs must lead everything without before the others are given spurs too."""
 
@@ -101,9 +104,29 @@ def search(frame: Frame, evidence: Evidence) -> list[Fitted]:
     found = [*spurred, *first, *_single_points(frame, evidence, [*spurred, *best])]
     found.sort(key=lambda item: -item.score)
     ring = next(item for item in found if item.shape.id == "intact_ring")
-    if ring.shape.spurs and len(frame.chain) >= 3 and ring.score > found[0].score - 60:
-        found += bridges(frame, evidence, ring.shape, ring, fitted)
+    excess = _excess(frame, ring)
+    if len(frame.chain) >= 3 and ring.score > found[0].score - 60 and (ring.shape.spurs or _row(frame, ring)):
+        found += bridges(frame, evidence, ring, excess, fitted)
     return sorted(found, key=lambda item: -item.score)
+
+
+def _excess(frame: Frame, ring: Fitted) -> Array:
+    """How far every point of the chain lies off the ring [ohm of line]: its spur, or what a spur would be."""
+    _, ohm = _gain(frame, ring)
+    spurs = np.array([ring.spur_ohm(point)[0] for point in range(frame.count)])
+    return np.maximum(np.where(spurs > 0, spurs, ohm), 0.0)[list(frame.chain)]
+
+
+def _row(frame: Frame, ring: Fitted) -> bool:
+    """True where neighbours together stand above the ring, though none of them does alone."""
+    gain, ohm = _gain(frame, ring)
+    signed = (np.sqrt(np.maximum(gain, 0.0)) * np.sign(ohm))[list(frame.chain)]
+    reached = np.concatenate(([0.0], np.cumsum(signed)))
+    return any(
+        (reached[b] - reached[a]) / (b - a) ** 0.5 > IN_A_ROW
+        for a in range(len(reached))
+        for b in range(a + 2, len(reached))
+    )
 
 
 def _settled(frame: Frame, ring: Fitted, leader: Fitted, spurred: Sequence[Fitted]) -> bool:
