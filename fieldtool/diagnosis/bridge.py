@@ -16,7 +16,7 @@ import numpy as np
 from fieldtool.diagnosis.chain import FIXED, GAP_SPREAD, LINK, LOG_T, Specs, predict
 from fieldtool.diagnosis.evidence import Evidence
 from fieldtool.diagnosis.frame import Array, Frame
-from fieldtool.diagnosis.shapes import COMMON, Shape, specs_of
+from fieldtool.diagnosis.shapes import COMMON, Shape, gap_ways, specs_of
 
 if TYPE_CHECKING:
     from fieldtool.diagnosis.search import Fitted
@@ -46,13 +46,13 @@ def bridges(frame: Frame, evidence: Evidence, best: Fitted, excess: Array, fitte
         replace(ring, id="bridged_ring", prior=prior, link=pair, spurs=best.shape.spurs - _inside(frame, pair))
         for pair in pairs
     ]
-    start = _start(frame, best, excess, shapes)
+    start = _start(frame, evidence, best, excess, shapes)
     near = _nearest(frame, shapes, start)
     shapes = [shapes[row] for row in near]
-    first = fitted(frame, evidence, shapes, steps=2, start=_start(frame, best, excess, shapes))
+    first = fitted(frame, evidence, shapes, steps=3, start=_start(frame, evidence, best, excess, shapes))
     order = sorted(range(len(first)), key=lambda row: -first[row].score)[:REFINED]
     kept = [shapes[row] for row in order]
-    return fitted(frame, evidence, kept, steps=3, start=_again(frame, kept, [first[row] for row in order]))
+    return fitted(frame, evidence, kept, steps=6, start=_again(frame, kept, [first[row] for row in order]))
 
 
 def _nearest(frame: Frame, shapes: Sequence[Shape], start: Array) -> list[int]:
@@ -71,13 +71,15 @@ def _inside(frame: Frame, pair: tuple[int, int]) -> frozenset[int]:
     return frozenset(frame.chain[pair[0] + 1 : pair[1]])
 
 
-def _start(frame: Frame, best: Fitted, excess: Array, shapes: Sequence[Shape]) -> Array:
+def _start(frame: Frame, evidence: Evidence, best: Fitted, excess: Array, shapes: Sequence[Shape]) -> Array:
     """Places and lengths that turn the spurs seen inside each link into what the link itself would do."""
     specs = specs_of(frame, shapes)
     at = np.zeros_like(specs.mean)
     total = float(np.exp(best.theta[LOG_T]))
     runs = len(frame.chain) + 1
-    gaps = np.exp(best.theta[FIXED : FIXED + runs])
+    ways = gap_ways(frame, evidence) if evidence.r1_r2 else []
+    way = best.shape.other_way
+    gaps = np.exp(GAP_SPREAD * ways[way] if len(ways) > way else best.theta[FIXED : FIXED + runs])
     gaps = gaps / gaps.sum() * total
     x = np.cumsum(gaps)[:-1]
     for row, shape in enumerate(shapes):

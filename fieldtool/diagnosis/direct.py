@@ -168,17 +168,26 @@ MANY = 6
 
 
 def calculated(evidence: Evidence) -> Iterator[Explanation]:
-    """Zs equal to Ze plus R1+R2 to the last digit at every point: no two meters scatter that little."""
+    """Figures that could only have been worked out from one another.
+
+    Zs equal to Ze plus R1+R2 to the last digit at every point is pointed out; where L-E crossed is moreover the same
+    (r1+r2)/4 everywhere, though it must rise from the board to the middle, nothing there was read.
+    """
     ze = evidence.ze
-    if ze is None:
-        return
-    dead = evidence.r1_r2 or {}
+    dead = evidence.r1_r2
     both = [point for point in evidence.zs if dead.get(point, inf) < inf and evidence.zs[point] < inf]
-    exact = [point for point in both if abs(evidence.zs[point] - ze - dead[point]) < 0.0051]
-    spread = {round(dead[point], 2) for point in both}
-    if len(both) >= MANY and len(exact) == len(both) and len(spread) >= 3:
-        yield _said(
-            "figures_calculated",
-            "Zs is Ze plus R1+R2 to the last digit throughout: worked out, not read?",
-            f"{len(both)} points agree to 0.01 Ω; readings scatter more than that",
-        )
+    if ze is None or len(both) < MANY or len({round(dead[point], 2) for point in both}) < 3:
+        return
+    if any(abs(evidence.zs[point] - ze - dead[point]) >= 0.0051 for point in both):
+        return
+    low, high = evidence.hump
+    crossed = {round(value, 3) for value in evidence.le.values()}
+    level = evidence.ends and len(evidence.le) >= MANY and len(crossed) == 1 and high - low > 0.005
+    yield _said(
+        "figures_calculated",
+        "Zs is Ze plus R1+R2 to the last digit throughout: worked out, not read?",
+        f"{len(both)} points agree to 0.01 Ω; readings scatter more than that"
+        + ("; L-E crossed never rises to the middle" if level else ""),
+        odds="probably" if level else "could_be",
+        stops=level,
+    )

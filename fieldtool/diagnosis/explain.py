@@ -87,7 +87,10 @@ def _shape(frame: Frame, evidence: Evidence) -> tuple[list[Explanation], bool]:
         shape = [_held_back(evidence, item) if item.healthy else item for item in shape]
         shape = _with_loops(frame, evidence, ranked, shape)
         ring = ring and shape[0].odds != "could_be"
-    return [*points, *calculated(evidence), *shape], ring and not points
+    desk = list(calculated(evidence))
+    first = [item for item in desk if item.stops_ring]
+    last = [replace(item, stands=False) for item in desk if not item.stops_ring]
+    return [*points, *first, *shape, *last], ring and not points
 
 
 def _absurd(item: Class) -> bool:
@@ -194,6 +197,9 @@ def _settle(evidence: Evidence, found: list[Explanation]) -> Settle | None:
     place = leading.where[0] if leading.where else evidence.circuit_id
     if leading.healthy and leading.id != "spur_from_spur":
         other = next((item for item in found if item.group != leading.group and item.stands), None)
+        if other is None and leading.id == "ring_with_spurs":
+            # A link reads like spurs side by side: where it comes near at all, say what would tell them apart.
+            other = next((item for item in found if item.id == "bridged_ring"), None)
         if other is None:
             return settle_by(leading.id, place) if leading.id in ("no_trip_mode", "parallel_earth_path") else None
         return settle_by(other.id, other.where[0] if other.where else evidence.circuit_id)

@@ -9,11 +9,11 @@ from math import log
 import numpy as np
 
 from fieldtool.diagnosis.bridge import bridges
-from fieldtool.diagnosis.chain import Specs, predict
+from fieldtool.diagnosis.chain import FIXED, Specs, predict
 from fieldtool.diagnosis.evidence import Evidence
 from fieldtool.diagnosis.fit import Fit, fit
 from fieldtool.diagnosis.frame import BLOCKS, Array, Frame
-from fieldtool.diagnosis.shapes import COMMON, SPUR, Shape, opens, simple, specs_of, start_of
+from fieldtool.diagnosis.shapes import COMMON, SPUR, Shape, gap_ways, opens, simple, specs_of, start_of
 
 __all__ = ["Fitted", "fitted", "hidden_cost", "search"]
 
@@ -33,7 +33,7 @@ KEPT = 3
 """How many kinds of explanation are given spurs."""
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Fitted:
     """One shape, fitted: its log odds before comparison, its parameters, predictions and their spread."""
 
@@ -89,9 +89,15 @@ def search(frame: Frame, evidence: Evidence) -> list[Fitted]:
     """Every shape worth comparing, fitted, best first."""
     shapes = [*simple(frame, evidence), *_likely_opens(frame, evidence)]
     first = sorted(fitted(frame, evidence, shapes), key=lambda item: -item.score)
-    ring = next(item for item in first if item.shape.id == "intact_ring")
+    rings = [item for item in first if item.shape.id == "intact_ring"]
+    more = _spurs(frame, evidence, rings)
+    # The same ring from two beginnings is one explanation: only the better is kept, the other may begin a link.
+    ways = [max((item for item in (ring, *more) if _way(item) == _way(ring)), key=_score) for ring in rings]
+    ways.sort(key=_score, reverse=True)
+    ring = next(item for item in rings if _way(item) == _way(ways[0]))
+    first = [item for item in first if item is ring or item not in rings]
+    more = [item for item in more if _way(item) == _way(ring)]
     best = [ring]
-    more = _spurs(frame, evidence, [ring])
     if not _settled(frame, ring, first[0], more):
         others: list[Fitted] = []
         for item in first:
@@ -103,11 +109,30 @@ def search(frame: Frame, evidence: Evidence) -> list[Fitted]:
     spurred = sorted((item for item in more if item.shape.spurs), key=lambda item: -item.score)
     found = [*spurred, *first, *_single_points(frame, evidence, [*spurred, *best])]
     found.sort(key=lambda item: -item.score)
-    ring = next(item for item in found if item.shape.id == "intact_ring")
-    excess = _excess(frame, ring)
-    if len(frame.chain) >= 3 and ring.score > found[0].score - 60 and (ring.shape.spurs or _row(frame, ring)):
-        found += bridges(frame, evidence, ring, excess, fitted)
-    return sorted(found, key=lambda item: -item.score)
+    for way in ways:
+        if len(frame.chain) >= 3 and way.score > found[0].score - 60 and (way.shape.spurs or _row(frame, way)):
+            found += bridges(frame, evidence, way, _excess(frame, way), fitted)
+    return _once(sorted(found, key=_score, reverse=True))
+
+
+def _score(item: Fitted) -> float:
+    return item.score
+
+
+def _way(item: Fitted) -> int:
+    return item.shape.other_way
+
+
+def _once(found: list[Fitted]) -> list[Fitted]:
+    """A link reached from two beginnings counts once."""
+    seen: set[Shape] = set()
+    out = []
+    for item in found:
+        shape = replace(item.shape, other_way=0)
+        if shape not in seen:
+            seen.add(shape)
+            out.append(item)
+    return out
 
 
 def _excess(frame: Frame, ring: Fitted) -> Array:
@@ -185,7 +210,7 @@ def _spurs(frame: Frame, evidence: Evidence, items: list[Fitted]) -> list[Fitted
             left_out.append(out)
         if not asking:
             break
-        start = _warm(frame, [item for item, _ in asking], [shape for _, shape in asking])
+        start = _warm(frame, evidence, [item for item, _ in asking], [shape for _, shape in asking])
         answers = fitted(frame, evidence, [shape for _, shape in asking], steps=2, start=start)
         open_items, tried = [], []
         for (before, _), after, out in zip(asking, answers, left_out, strict=True):
@@ -219,8 +244,9 @@ def _next_spurs(frame: Frame, item: Fitted, out: frozenset[int], always: frozens
     return frozenset({best}) if len(gain) and gain[best] > (LEAST_GAIN if not out else ASK_AGAIN) else frozenset()
 
 
-def _warm(frame: Frame, items: Sequence[Fitted], shapes: Sequence[Shape]) -> Array:
-    """Begin the next fit where the last one ended."""
+def _warm(frame: Frame, evidence: Evidence, items: Sequence[Fitted], shapes: Sequence[Shape]) -> Array:
+    """Begin the next fit where the last one ended; a first spur begins from the places as read, not as bent to fit."""
+    ways = gap_ways(frame, evidence) if evidence.r1_r2 else []
     specs = specs_of(frame, shapes)
     first = specs.mean.shape[1] - len(specs.spurs)
     at = np.zeros_like(specs.mean)
@@ -228,6 +254,9 @@ def _warm(frame: Frame, items: Sequence[Fitted], shapes: Sequence[Shape]) -> Arr
         keep = min(first, len(item.theta) - len(item.specs.spurs))
         spread = np.where(specs.spread[row, :keep] > 0, specs.spread[row, :keep], 1.0)
         at[row, :keep] = (item.theta[:keep] - specs.mean[row, :keep]) / spread
+        fresh = not item.shape.spurs and item.shape.id == "intact_ring" and not shapes[row].hidden
+        if fresh and len(ways) > item.shape.other_way:
+            at[row, FIXED : FIXED + len(frame.chain) + 1] = ways[item.shape.other_way]
         _, ohm = _gain(frame, item)
         for column, point in enumerate(specs.spurs):
             if point in shapes[row].spurs:
@@ -254,7 +283,7 @@ def _single_points(frame: Frame, evidence: Evidence, items: Sequence[Fitted]) ->
             warm.append(item)
     if not shapes:
         return []
-    return fitted(frame, evidence, shapes, start=_warm(frame, warm, shapes))
+    return fitted(frame, evidence, shapes, start=_warm(frame, evidence, warm, shapes))
 
 
 def _misfits(frame: Frame, evidence: Evidence, item: Fitted) -> list[tuple[frozenset[int], str]]:

@@ -30,7 +30,7 @@ from fieldtool.diagnosis.chain import (
 from fieldtool.diagnosis.evidence import Evidence
 from fieldtool.diagnosis.frame import Array, Frame
 
-__all__ = ["COMMON", "SPUR", "Shape", "opens", "simple", "specs_of", "start_of"]
+__all__ = ["COMMON", "SPUR", "Shape", "gap_ways", "opens", "simple", "specs_of", "start_of"]
 
 CONDUCTORS = ("line", "neutral", "cpc")
 
@@ -78,6 +78,7 @@ class Shape:
     mixed: int = -1
     leads: str = ""
     loop: bool = False
+    other_way: int = 0
     ratio: float | None = None
     spurs: frozenset[int] = frozenset()
     hidden: frozenset[int] = frozenset()
@@ -90,6 +91,9 @@ class Shape:
 def simple(frame: Frame, evidence: Evidence) -> Iterator[Shape]:
     """A sound ring, the slips of the test, joints, other sizes, a leg left off."""
     yield Shape("intact_ring", COMMON["intact_ring"])
+    if evidence.r1_r2:
+        # The same ring begun from the second likeliest places: only the better of the two is kept.
+        yield Shape("intact_ring", COMMON["intact_ring"], other_way=1)
     if evidence.ln:
         yield Shape("ends_joined_wrongly", COMMON["ends_joined_wrongly"], join_ln=SAME)
         yield Shape("one_join_left_off", COMMON["one_join_left_off"], join_ln=ONE)
@@ -214,20 +218,18 @@ def start_of(frame: Frame, evidence: Evidence, shapes: Sequence[Shape], specs: S
     """Where each fit begins: length from step 1, places from R1+R2 where read, joints from what is left over."""
     rows, wide = specs.mean.shape
     at = np.zeros((rows, wide))
-    ends = [value for value in (evidence.r1, evidence.rn) if value is not None and 0 < value < inf]
     crossed = [value for value in evidence.ln.values() if 0 < value < inf]
-    if not ends and evidence.r2 is not None and 0 < evidence.r2 < inf:
-        ends = [evidence.r2 / frame.ratio]
-    total = min(ends) if ends else 2 * float(np.median(crossed)) if crossed else 55.0 * frame.line_per_m
+    total = _total(frame, evidence)
     at[:, LOG_T] = np.clip((log(max(total, 1e-3)) - specs.mean[:, LOG_T]) / specs.spread[:, LOG_T], -4, 4)
     r2 = evidence.r2
-    if r2 is not None and 0 < r2 < inf and ends and not frame.ratio_known:
+    if r2 is not None and 0 < r2 < inf and not frame.ratio_known:
         at[:, RATIO] = np.clip((log(r2 / total) - specs.mean[:, RATIO]) / specs.spread[:, RATIO], -3, 3)
     sizes = joint_sizes(frame, evidence)
     share = _share(frame, evidence, total)
-    gaps = _gaps(frame, share)
-    if gaps is not None:
-        at[:, FIXED : FIXED + len(gaps)] = gaps
+    ways = gap_ways(frame, evidence)
+    for row, shape in enumerate(shapes):
+        if len(ways) > shape.other_way:
+            at[row, FIXED : FIXED + len(frame.chain) + 1] = ways[shape.other_way]
     first = FIXED + len(frame.chain) + 1
     for column, point in enumerate(frame.free):
         # Half way round is where a reading says least of the place: begin beside it.
@@ -244,27 +246,49 @@ def start_of(frame: Frame, evidence: Evidence, shapes: Sequence[Shape], specs: S
     return at
 
 
+def _total(frame: Frame, evidence: Evidence) -> float:
+    """Line of the ring end to end, as well as the readings tell before any fit [ohm]."""
+    ends = [value for value in (evidence.r1, evidence.rn) if value is not None and 0 < value < inf]
+    crossed = [value for value in evidence.ln.values() if 0 < value < inf]
+    if not ends and evidence.r2 is not None and 0 < evidence.r2 < inf:
+        ends = [evidence.r2 / frame.ratio]
+    return min(ends) if ends else 2 * float(np.median(crossed)) if crossed else 55.0 * frame.line_per_m
+
+
 def _share(frame: Frame, evidence: Evidence, total: float) -> Array:
     """R1+R2 in service of every point as x(1-x) of the loop, from dead readings or Zs less Ze; NaN where not read."""
     out = np.full(frame.count, np.nan)
+    flat = float(np.median([value for value in evidence.ln.values() if value < inf] or [inf]))
     for number, point in enumerate(frame.points):
         value = evidence.r1_r2.get(point)
         slot = frame.slot("zs", number)
         if value is None and frame.seen[slot]:
             value = float(frame.y[slot])
         if value is not None and value < inf:
+            # What lifts L-N crossed at a point is its spur, or a link's doing, and no place on the ring.
+            lifted = evidence.ln.get(point, flat) - flat
+            if 0.03 < lifted < inf:
+                value -= lifted * (1 + frame.ratio) / 2
             out[number] = max(value, 0.0) / ((1 + frame.ratio) * total)
     return out
 
 
-def _gaps(frame: Frame, share: Array) -> Array | None:
-    """Standardised lengths of the runs from those shares: rising to the middle of the ring, then falling."""
-    mine = share[list(frame.chain)]
+def gap_ways(frame: Frame, evidence: Evidence) -> list[Array]:
+    """Standardised lengths of the runs from R1+R2 in service, rising to the middle of the ring and then falling.
+
+    Which points lie before the middle no reading says of one alone: the two likeliest ways to part them.
+    """
+    mine = _share(frame, evidence, _total(frame, evidence))[list(frame.chain)]
     if len(mine) < 3 or np.isnan(mine).any():
-        return None
-    peak = int(mine.argmax())
-    half = 0.5 - np.sqrt(np.clip(0.25 - mine, 0.0, 0.25))
-    x = np.where(np.arange(len(mine)) <= peak, half, 1 - half)
-    x = np.clip(np.maximum.accumulate(x), 0.005, 0.995)
-    gaps = np.maximum(np.diff(np.concatenate(([0.0], x, [1.0]))), 0.004)
-    return np.asarray(np.clip((np.log(gaps) - np.log(gaps).mean()) / GAP_SPREAD, -2.5, 2.5), dtype=np.float64)
+        return []
+    half = np.clip(0.5 - np.sqrt(np.clip(0.25 - mine, 0.0, 0.25)), 0.005, 0.495)
+    ways: list[tuple[float, Array]] = []
+    for before in range(len(mine) + 1):
+        x = np.concatenate(([0.0], half[:before], 1 - half[before:], [1.0]))
+        step = np.diff(x)
+        back = float((np.minimum(step, 0.0) ** 2).sum()) / 0.02**2
+        gaps = np.log(np.maximum(np.diff(np.maximum.accumulate(x)), 0.004))
+        lengths = (gaps - gaps.mean()) / GAP_SPREAD
+        ways.append((back + float((lengths**2).sum()), np.clip(lengths, -2.5, 2.5)))
+    ways.sort(key=lambda way: way[0])
+    return [way for cost, way in ways[:2] if cost < ways[0][0] + 12.0]

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import random
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from math import inf, isinf
 from typing import Any
 
@@ -32,7 +32,7 @@ class Meter:
         if isinf(ohm) or ohm > 1999:
             return None
         value = ohm * (1 + self.gain) + self.zero_ohm + rng.gauss(0.0, self.scatter_ohm)
-        return max(floor, round(round(value / self.digit_ohm) * self.digit_ohm, 4))
+        return max(floor, round(round(value / self.digit_ohm) * self.digit_ohm, 9))
 
 
 @dataclass
@@ -140,7 +140,7 @@ def take(drawn: Drawn) -> Drawn:
     wires, rng = drawn.wires, drawn.rng
 
     def note(test: str, point: str | None, ohm: float, *, lead: float = 0.0, scatter: float = 1.0, **more: Any) -> None:
-        meter = Meter(drawn.meter.gain, drawn.meter.zero_ohm, drawn.meter.scatter_ohm * scatter)
+        meter = replace(drawn.meter, scatter_ohm=drawn.meter.scatter_ohm * scatter)
         value = meter.read(rng, ohm + lead)
         row: dict[str, Any] = {"test": test, "point": point, **more}
         row |= {"sign": "open"} if value is None else {"value": value}
