@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
-from math import exp, hypot, isfinite, log, sqrt
+from math import exp, hypot, inf, isfinite, log, sqrt
 
 import numpy as np
 
@@ -253,7 +253,9 @@ def _sentence(frame: Frame, evidence: Evidence, item: Fitted, name: str, where: 
     joint = float(np.exp(item.theta[JOINT]))
     place = f" near {named}" if where else "; place not shown"
     wires = [wire for wire, run in zip(("line", "neutral", "earth"), item.shape.open_run, strict=True) if run >= 0]
-    whole = [wire for wire in ("line", "neutral", "earth") if wire not in wires]
+    three = (("line", evidence.r1), ("neutral", evidence.rn), ("earth", evidence.r2))
+    whole = [wire for wire, value in three if wire not in wires and value is not None and value < inf]
+    rest = f"; whole in {' and '.join(whole)}" if whole else ""
     leads = {"all": "Every reading", "points": "Every crossed reading", "ends": "Every end-to-end reading"}
     said = {
         "intact_ring": f"Shown to be a ring by these readings, all three wires{about}.",
@@ -263,10 +265,10 @@ def _sentence(frame: Frame, evidence: Evidence, item: Fitted, name: str, where: 
         "one_join_left_off": "Reads as one path, not two: one of the two cross joins is off.",
         "leads_not_nulled": f"{leads.get(item.shape.leads, 'Each')} is high alike: are the leads nulled?",
         "bridged_ring": f"A link across the ring, {named}; its true length is more.",
-        "open_line": f"Ring open in line{place if where else ''}; whole in neutral and earth.",
-        "open_neutral": f"Ring open in neutral{place if where else ''}; whole in line and earth.",
-        "open_cpc": f"Ring open in earth{place if where else ''}; whole in line and neutral.",
-        "open_several": f"Ring open in {' and '.join(wires)}; whole in {' and '.join(whole)}.",
+        "open_line": f"Ring open in line{place if where else ''}{rest}.",
+        "open_neutral": f"Ring open in neutral{place if where else ''}{rest}.",
+        "open_cpc": f"Ring open in earth{place if where else ''}{rest}.",
+        "open_several": f"Ring open in {' and '.join(wires)}{rest}.",
         "joint_line": f"A joint of about {joint:.2f} Ω in the line, or another size{place}.",
         "joint_neutral": f"A joint of about {joint:.2f} Ω in the neutral, or another size{place}.",
         "joint_cpc": f"A joint of about {joint:.2f} Ω in the earth, or a smaller earth.",

@@ -9,7 +9,7 @@ from math import inf
 from fieldtool.answers import Explanation, Odds
 from fieldtool.diagnosis.evidence import Evidence
 
-__all__ = ["calculated", "contacts", "earth_off", "no_ring", "open_points", "radial"]
+__all__ = ["calculated", "contacts", "earth_off", "no_joins", "no_ring", "open_points", "radial", "too_good", "unlike"]
 
 LOW_OHM = 1e6
 """Insulation under this is a contact [ohm]; Table 64."""
@@ -85,6 +85,67 @@ def contacts(evidence: Evidence) -> Iterator[Explanation]:
             "IR from this neutral to the others under 1 MΩ",
             odds="almost_certainly",
             danger=True,
+        )
+
+
+LEAST_OHM = 0.03
+"""No ring of copper reads less end to end [ohm]: 4 m of 2.5 mm² by IEC 60228."""
+
+_WIRES = {"r1": "line", "rn": "neutral", "r2": "earth"}
+
+
+def too_good(evidence: Evidence) -> Iterator[Explanation]:
+    """Next to nothing between the ends of a ring: the clips touch, or sit on one end."""
+    ends = {"r1": evidence.r1, "rn": evidence.rn, "r2": evidence.r2}
+    near = [key for key, value in ends.items() if value is not None and value < LEAST_OHM]
+    if near:
+        yield _said(
+            "too_good",
+            f"{near[0]} reads {ends[near[0]]:.2f} Ω: no ring is that good. Are the clips touching?",
+            "4 m of 2.5 mm² already reads 0.03 Ω",
+        )
+
+
+def no_joins(evidence: Evidence) -> Iterator[Explanation]:
+    """Every crossed reading open although the ring is whole end to end: neither of the two joins is made."""
+    steps = [
+        step
+        for values, step in ((evidence.ln, "L-N"), (evidence.le, "L-E"))
+        if len(values) >= 2 and all(value == inf for value in values.values())
+    ]
+    if evidence.ends and steps:
+        yield _said(
+            "one_join_left_off",
+            f"Every {' and '.join(steps)} crossed reading is open: the joins are not made.",
+            "the ring is whole end to end",
+            odds="almost_certainly",
+        )
+
+
+def unlike(evidence: Evidence, given: dict[tuple[str, str], float]) -> Iterator[Explanation]:
+    """Readings that read open, or far too much, where all the others say that there is copper.
+
+    ``given`` is what the best explanation of the rest gives for them [ohm].
+    """
+    for (test, point), ohm in given.items():
+        value = {"r1": evidence.r1, "rn": evidence.rn, "r2": evidence.r2}.get(test)
+        if point:
+            of = {"ln_cross": evidence.ln, "le_cross": evidence.le, "r1_r2": evidence.r1_r2, "r1_rn": evidence.r1_rn}
+            value = of[test].get(point)
+        if value is None or (point and value == inf and test in ("ln_cross", "le_cross")):
+            continue
+        shown = "open" if value == inf else f"{value:g} Ω"
+        at = f" at {evidence.names[point]}" if point else ""
+        name = {"ln_cross": "L-N crossed", "le_cross": "L-E crossed", "r1_r2": "R1+R2", "r1_rn": "R1+Rn"}.get(
+            test, test
+        )
+        slips = [times for times in (10, 100, 1000) if ohm > 0 and value < inf and 0.6 < value / ohm / times < 1.7]
+        ask = f" {value / slips[0]:.2f}?" if slips else ""
+        yield _said(
+            "one_reading_off" if point else "end_slip",
+            f"{name}{at} reads {shown}, but the rest gives {ohm:.2f} Ω:{ask or ' read it again.'}",
+            f"{_WIRES[test]} is whole by the crossed readings" if test in _WIRES else "no copper reads that much",
+            where=(point,) if point else (),
         )
 
 

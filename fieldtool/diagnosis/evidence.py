@@ -116,7 +116,7 @@ class Evidence:
         le = sum(point not in self.le for point in points)
         if ln:
             return f"L-N crossed at {ln} more point{'s' if ln > 1 else ''}"
-        return f"L-E crossed at {le} more: only that shows the earth" if le else "nothing to read"
+        return f"L-E crossed at {le} more: only that shows the earth" if le else "repeat steps 1 to 3"
 
     def so_far(self) -> str:
         """What can be said while nothing is explained yet."""
@@ -125,7 +125,7 @@ class Evidence:
             if self.r1_r2[worst] == inf:
                 return f"R1+R2 reads open at {self.names[worst]}."
             return f"A radial as read: R1+R2 rises to {self.r1_r2[worst]:.2f} Ω at {self.names[worst]}."
-        if self.r1 is not None or self.ln:
+        if self.r1 is not None or self.ln or self.le or self.rn is not None or self.r2 is not None:
             return "Not enough yet to say what it is."
         return ""
 

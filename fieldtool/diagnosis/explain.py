@@ -15,7 +15,17 @@ import numpy as np
 
 from fieldtool.answers import CircuitReading, Explanation, Odds, Settle
 from fieldtool.diagnosis.classes import Class, classes, explained, least_spur_m, odds_of
-from fieldtool.diagnosis.direct import calculated, contacts, earth_off, no_ring, open_points, radial
+from fieldtool.diagnosis.direct import (
+    calculated,
+    contacts,
+    earth_off,
+    no_joins,
+    no_ring,
+    open_points,
+    radial,
+    too_good,
+    unlike,
+)
 from fieldtool.diagnosis.evidence import Evidence, gather
 from fieldtool.diagnosis.frame import Frame, frame_of
 from fieldtool.diagnosis.loops import loops
@@ -36,7 +46,7 @@ def explain(job: Job, circuit_id: str, stage: str = "as_found") -> CircuitReadin
     Raises KeyError for an unknown circuit.
     """
     evidence = gather(job, circuit_id, stage)
-    first = [*earth_off(evidence), *contacts(evidence), *_with_alike(no_ring(evidence))]
+    first = [*earth_off(evidence), *contacts(evidence), *_with_alike(no_ring(evidence)), *too_good(evidence)]
     shape: list[Explanation] = []
     ring = False
     smallest = None
@@ -69,7 +79,14 @@ def _ring_read(evidence: Evidence) -> bool:
         return False
     if evidence.legs == "wrong":
         return False
-    return len(ends) == 3 or len(evidence.ln) >= 3 or (len(ends) >= 1 and len(evidence.ln) + len(evidence.le) >= 3)
+    if not evidence.names and len(ends) < 3:
+        return False
+    return (
+        len(ends) == 3
+        or inf in ends
+        or len(evidence.ln) >= 3
+        or (len(ends) >= 1 and len(evidence.ln) + len(evidence.le) >= 3)
+    )
 
 
 def _shape(frame: Frame, evidence: Evidence) -> tuple[list[Explanation], bool]:
@@ -81,16 +98,25 @@ def _shape(frame: Frame, evidence: Evidence) -> tuple[list[Explanation], bool]:
     shape = explained(frame, evidence, ranked)
     best = ranked[0].best
     expected = frozenset(frame.cell(int(slot)) for slot in np.flatnonzero(np.isinf(best.shown)))
-    points = _with_alike(open_points(evidence, expected))
+    given = {
+        frame.cell(int(slot)): float(best.shown[slot])
+        for slot in np.flatnonzero(frame.gone & np.isfinite(best.shown))
+        if shape[0].id != "nothing_fits"
+    }
+    none = list(no_joins(evidence))
+    points = none or [*_with_alike(open_points(evidence, expected)), *unlike(evidence, given)]
     ring = shape[0].healthy and _read_enough(evidence)
+    if len({*evidence.ln, *evidence.le}) < 3 and shape[0].odds == "almost_certainly" and not evidence.complete:
+        # From the ends alone a clip or a leg in another way is not ruled out.
+        shape = [replace(item, odds="probably") if item.odds == "almost_certainly" else item for item in shape]
     if shape[0].healthy:
         shape = [_held_back(evidence, item) if item.healthy else item for item in shape]
         shape = _with_loops(frame, evidence, ranked, shape)
         ring = ring and shape[0].odds != "could_be"
     desk = list(calculated(evidence))
-    first = [item for item in desk if item.stops_ring]
+    sure = [item for item in desk if item.stops_ring]
     last = [replace(item, stands=False) for item in desk if not item.stops_ring]
-    return [*points, *first, *shape, *last], ring and not points
+    return [*points, *sure, *shape, *last], ring and not points
 
 
 def _absurd(item: Class) -> bool:
@@ -159,7 +185,7 @@ def _loop_words(evidence: Evidence, ring: Explanation, key: str, odds: Odds, ove
         reasoning=("Zs held against Ze and what the dead readings give", *ring.reasoning),
         where=(point,) if point else ring.where,
         healthy=healthy,
-        stops_ring=key == "leg_not_connected",
+        stops_ring=not healthy,
     )
 
 
@@ -174,8 +200,8 @@ def _with_alike(items: Iterable[Explanation]) -> list[Explanation]:
 
 def _ranked(first: list[Explanation], shape: list[Explanation]) -> list[Explanation]:
     """Dangers that single readings show come first, then the shapes as their evidence ranks them."""
-    hard = [item for item in first if item.danger]
-    soft = [item for item in first if not item.danger]
+    hard = [item for item in first if item.danger or item.id == "too_good"]
+    soft = [item for item in first if item not in hard]
     if shape and shape[0].stops_ring and not hard:
         return [*shape, *soft]
     return [*hard, *soft, *shape]

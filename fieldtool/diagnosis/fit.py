@@ -112,7 +112,7 @@ def _linear(frame: Frame, specs: Specs, at: Array, scale: Array) -> tuple[Array,
         moves = places_by_gaps(frame, specs, at)
         by_place = change[:, -2, 3:].reshape(rows, 5, count, 1)
         last = FIXED + moves.shape[2]
-        slope[:, 3:, FIXED:last] = (by_place * moves[:, None]).reshape(rows, 5 * count, -1)
+        slope[:, 3:, FIXED:last] = (by_place * moves[:, None]).reshape(rows, 5 * count, moves.shape[2])
         by_spur = change[:, -1, 3:].reshape(rows, 5, count)
         for column, point in enumerate(specs.spurs, start=last):
             slots = 3 + np.arange(5) * count + point

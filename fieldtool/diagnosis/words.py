@@ -41,6 +41,7 @@ SETTLE: dict[str, tuple[str, str]] = {
     "line_neutral_swapped": ("le_cross", "Open that point: which wire is where? Probe L-E crossed again."),
     "line_earth_swapped": ("polarity", "Do not energise. Open that point: which wire is where?"),
     "neutral_earth_swapped": ("ln_cross", "Open that point: which wire is where?"),
+    "too_good": ("r1", "Part the clips, see that the meter reads open, then read end to end again."),
     "nothing_fits": ("r1", "Null the leads on a low-resistance ohmmeter and repeat steps 1 to 3."),
     "radial": ("legs", "Prove the legs at the way: no second end."),
 }

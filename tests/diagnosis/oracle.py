@@ -67,6 +67,9 @@ def separable(drawn: Drawn, job: Job) -> bool:
     evidence = gather(job, "c1", "as_found")
     frame = frame_of(evidence)
     shape = true_shape(drawn, frame)
+    if drawn.fault == "figures calculated" and drawn.sizes[0] == drawn.sizes[1]:
+        # An earth of equal size makes no hump, so figures without scatter look just like figures worked out.
+        return False
     if shape is None:
         return True
     specs = specs_of(frame, [shape])
