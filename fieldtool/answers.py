@@ -232,7 +232,7 @@ class Explanation:
 
     ``stops_ring`` is True where ring-based ways wait until it is settled; ``predicted`` pairs each reading's cell
     with the value this explanation gives. ``stands`` is False where the leading explanation is more than twenty
-    times as likely: it is shown, and nothing waits for it.
+    times as likely: it is shown, and nothing waits for it. ``test`` is the test whose readings a slip is in.
     """
 
     id: str
@@ -247,6 +247,7 @@ class Explanation:
     danger: bool = False
     healthy: bool = False
     stands: bool = True
+    test: str = ""
 
 
 @dataclass(frozen=True, slots=True)

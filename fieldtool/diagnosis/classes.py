@@ -9,7 +9,7 @@ from math import exp, hypot, inf, isfinite, log, sqrt
 import numpy as np
 
 from fieldtool.answers import Explanation, Inferred, Odds
-from fieldtool.diagnosis.chain import JOINT, LINK, LOG_T, RATIO
+from fieldtool.diagnosis.chain import CROSSED, JOINT, LINK, LOG_T, RATIO
 from fieldtool.diagnosis.evidence import Evidence
 from fieldtool.diagnosis.frame import Frame
 from fieldtool.diagnosis.search import Fitted
@@ -178,8 +178,7 @@ def _explanation(
     where = _where(frame, group, item)
     if name == "ring_with_spurs" and _on_a_spur(evidence):
         name = "spur_from_spur"
-    healthy = name in ("intact_ring", "ring_with_spurs", "spur_from_spur")
-    sized = name in ("size_cpc", "mixed_sizes")
+    healthy = name in ("intact_ring", "ring_with_spurs", "spur_from_spur") or _larger_earth(frame, evidence, name)
     return Explanation(
         name,
         key,
@@ -189,11 +188,24 @@ def _explanation(
         inferred=() if name == "nothing_fits" else inferred_of(frame, evidence, item),
         reasoning=_reasons(frame, evidence, item, name),
         predicted=() if name == "nothing_fits" else _predicted(frame, item),
-        stops_ring=not healthy and not (sized and key == "size_cpc"),
+        stops_ring=not healthy,
         danger=name in ("open_cpc", "open_several") and (item.shape.open_run[2] >= 0 or name == "open_several"),
         healthy=healthy,
         stands=stands,
+        test=_slip_in(item) if name in ("ends_joined_wrongly", "one_join_left_off") else "",
     )
+
+
+def _larger_earth(frame: Frame, evidence: Evidence, name: str) -> bool:
+    """True for an earth that reads less than its cable would give: a larger size, which no joint can be."""
+    if name not in ("size_cpc", "mixed_sizes") or not evidence.r1 or evidence.r2 is None:
+        return False
+    return evidence.r2 / evidence.r1 < frame.ratio
+
+
+def _slip_in(item: Fitted) -> str:
+    """The step whose joins were made wrongly; the first of the two where both were."""
+    return "ln_cross" if item.shape.join_ln != CROSSED else "le_cross"
 
 
 def _on_a_spur(evidence: Evidence) -> bool:

@@ -229,7 +229,8 @@ def _settle(evidence: Evidence, found: list[Explanation]) -> Settle | None:
         if other is None:
             return settle_by(leading.id, place) if leading.id in ("no_trip_mode", "parallel_earth_path") else None
         return settle_by(other.id, other.where[0] if other.where else evidence.circuit_id)
-    return settle_by(leading.id, place)
+    settle = settle_by(leading.id, place)
+    return replace(settle, test=leading.test) if settle is not None and leading.test else settle
 
 
 def _remarks(evidence: Evidence, found: list[Explanation]) -> tuple[tuple[str, str], ...]:

@@ -87,7 +87,13 @@ def test_same_end_joins() -> None:
     assert read(drawn, "le_cross")[0] == pytest.approx(0.11, abs=0.0101)
     leading = said(drawn).leading
     assert leading is not None
-    assert (leading.id, leading.stops_ring) == ("ends_joined_wrongly", True)
+    assert (leading.id, leading.stops_ring, leading.test) == ("ends_joined_wrongly", True, "ln_cross")
+
+
+def test_wrong_joins_of_step_3_alone_leave_step_2_as_it_is() -> None:
+    leading = said(sheet(lambda drawn: setattr(drawn, "joins_le", "same"))).leading
+    assert leading is not None
+    assert (leading.id, leading.test) == ("ends_joined_wrongly", "le_cross")
 
 
 def test_one_of_the_two_joins_left_off() -> None:
@@ -189,8 +195,11 @@ def test_cpc_of_1_0_and_of_equal_size() -> None:
     assert ends(small) == near(0.44, 0.44, 1.09)
     equal = sheet(lambda drawn: _lay_again(drawn, lambda *_: 2.5))
     assert ends(equal) == near(0.44, 0.44, 0.44)
-    for drawn in (small, equal):
-        assert [item.id for item in said(drawn).explanations][:1] == ["size_cpc"]
+    for drawn, stops in ((small, True), (equal, False)):
+        leading = said(drawn).leading
+        assert leading is not None
+        # A smaller earth may be a joint until the cable was seen; a larger one can be nothing worse.
+        assert (leading.id, leading.stops_ring) == ("size_cpc", stops)
 
 
 def test_leads_not_nulled() -> None:
