@@ -239,7 +239,8 @@ class Explanation:
     """One thing the circuit could be. Explanations with the same ``group`` cannot be told apart by these readings.
 
     ``stops_ring`` is True where ring-based ways wait until it is settled; ``predicted`` pairs each reading's cell
-    with the value this explanation gives.
+    with the value this explanation gives. ``stands`` is False where the leading explanation is more than twenty
+    times as likely: it is shown, and nothing waits for it. ``test`` is the test whose readings a slip is in.
     """
 
     id: str
@@ -253,6 +254,8 @@ class Explanation:
     stops_ring: bool = False
     danger: bool = False
     healthy: bool = False
+    stands: bool = True
+    test: str = ""
 
 
 @dataclass(frozen=True, slots=True)

@@ -214,11 +214,7 @@ class Readings(Pane):
             return
         leading = visit.circuit_reading(circuit).leading
         if leading is not None and leading.id == "ends_joined_wrongly":
-            test = (
-                "ln_cross"
-                if any(r.test == "ln_cross" and r.circuit == circuit for r in visit.job.standing())
-                else "le_cross"
-            )
+            test = leading.test or "ln_cross"
             count = visit.set_aside(circuit, test, "taken with the ends wrongly joined")
             self.bench.say(f"{count} readings set aside; none is deleted. Swap the pairs, start again.")
             self.shown()

@@ -121,6 +121,10 @@ def _doubt(
         return f"r2 {value:.2f} is under r1 {r1:.2f}; an earth near {sum(span) / 2:.2f} was likely. Check clips."
     if test not in ("r1", "rn", "r2", "ln_cross", "le_cross", "r1_r2", "zs"):
         return ""
+    if test in _ENDS:
+        length = _length_doubt(job, circuit_id, test, value)
+        if length:
+            return length
     near = _neighbours(job, circuit_id, point_id, test, stage) if point_id is not None else []
     usual = median(near) if near else (sum(span) / 2 if span is not None else None)
     if usual is None or usual <= 0:
@@ -128,11 +132,35 @@ def _doubt(
     for factor in (1000, 100, 10):
         if value >= usual * factor * 0.6 and value > 2:
             return f"{value:g} Ω is about {factor} times what was likely, {usual:.2f}. Look again."
+    if test in _ENDS and 0 < value <= usual / 6:
+        return f"{value:g} Ω is about a tenth of what was likely, {usual:.2f}. Look again."
     if 0 < value <= usual / 50:
         return f"{value:g} Ω is far under what was likely, {usual:.2f}. Look again."
     before = _value(job, circuit_id, point_id, test, stage)
     if before is not None and abs(before - value) > max(0.1, 0.3 * before):
         return f"Was {before:.2f} here before. Both are kept; which one stands?"
+    return ""
+
+
+_ENDS = ("r1", "rn", "r2")
+
+MOST_RING_M, LEAST_RING_M = 300.0, 5.0
+"""Lengths beyond which a ring is hardly one [m]; our assumption, about three times the longest met."""
+
+
+def _length_doubt(job: Job, circuit_id: str, test: str, value: float) -> str:
+    """An end-to-end reading that no likely length of the cable found would give."""
+    key = job.circuit(circuit_id).cable
+    kind = cable(key) if key is not None else None
+    if kind is None or kind.cpc_mm2 is None or kind.measured_resistance_only:
+        return ""
+    metres = value / r_ohm_per_m(kind.cpc_mm2 if test == "r2" else kind.line_mm2).value
+    if metres > MOST_RING_M:
+        slip = next((times for times in (1000, 100, 10) if 15 <= metres / times <= 150), None)
+        ask = f" {value / slip:.2f}?" if slip else " Look again."
+        return f"{value:g} Ω would be {metres:.0f} m of {kind.words}.{ask}"
+    if metres < LEAST_RING_M:
+        return f"{value:g} Ω would be {metres:.1f} m of ring. Are the clips touching?"
     return ""
 
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from math import inf
 
 from fieldtool.job.job import Job
@@ -35,10 +35,26 @@ class Evidence:
     ln: dict[str, float]
     le: dict[str, float]
     r1_r2: dict[str, float]
+    r1_rn: dict[str, float]
     zs: dict[str, float]
     ze: float | None
     line_per_m: float | None
     cpc_per_m: float | None
+    walked: frozenset[str] = frozenset()
+    no_trip: frozenset[str] = frozenset()
+    unsteady: frozenset[str] = frozenset()
+    label: str = "none"
+    counts: tuple[int | None, int | None, int | None] = (None, None, None)
+    legs: str = ""
+    at_board: dict[str, float] = field(default_factory=dict)
+
+    def root(self, point: str) -> str:
+        """The point of the ring that a spur hangs on, through any spurs between."""
+        seen: set[str] = set()
+        while point in self.parents and point not in seen:
+            seen.add(point)
+            point = self.parents[point]
+        return point
 
     @property
     def ends(self) -> bool:
@@ -100,7 +116,7 @@ class Evidence:
         le = sum(point not in self.le for point in points)
         if ln:
             return f"L-N crossed at {ln} more point{'s' if ln > 1 else ''}"
-        return f"L-E crossed at {le} more: only that shows the earth" if le else "nothing to read"
+        return f"L-E crossed at {le} more: only that shows the earth" if le else "repeat steps 1 to 3"
 
     def so_far(self) -> str:
         """What can be said while nothing is explained yet."""
@@ -109,7 +125,7 @@ class Evidence:
             if self.r1_r2[worst] == inf:
                 return f"R1+R2 reads open at {self.names[worst]}."
             return f"A radial as read: R1+R2 rises to {self.r1_r2[worst]:.2f} Ω at {self.names[worst]}."
-        if self.r1 is not None or self.ln:
+        if self.r1 is not None or self.ln or self.le or self.rn is not None or self.r2 is not None:
             return "Not enough yet to say what it is."
         return ""
 
@@ -172,12 +188,55 @@ def gather(job: Job, circuit_id: str, stage: str) -> Evidence:
         ln=at_points("ln_cross"),
         le=at_points("le_cross"),
         r1_r2=at_points("r1_r2"),
+        r1_rn=at_points("r1_rn"),
         zs=at_points("zs"),
         ze=ze.value if ze is not None else None,
         line_per_m=r_ohm_per_m(kind.line_mm2).value if usable and kind is not None else None,
         cpc_per_m=r_ohm_per_m(kind.cpc_mm2 or 1.0).value if usable and kind is not None else None,
+        walked=frozenset(point.id for point in points if point.walk_order is not None),
+        no_trip=_no_trip(job, circuit_id, stage),
+        unsteady=_unsteady(job, circuit_id, stage),
+        label=circuit.label_claims,
+        counts=(circuit.line_ends, circuit.neutral_ends, circuit.cpc_ends),
+        legs=_answer(job, circuit_id, "legs", stage),
+        at_board={test: values[(None, test)] for test in AT_BOARD if (None, test) in values},
     )
 
 
-TEST_IS_OHM = dict.fromkeys(("r1", "rn", "r2", "ln_cross", "le_cross", "r1_r2"), True)
+AT_BOARD = ("ir_ln", "ir_le", "ir_ne", "ir_live_e", "ir_neutrals", "cpc_to_met")
+"""Tests of the whole circuit, beside r1, rn and r2, that say what it is."""
+
+UNSTEADY_OHM = 0.06
+"""Two readings of one thing further apart than this are unsteady [ohm]; twice what contacts scatter."""
+
+
+def _answer(job: Job, circuit_id: str, test: str, stage: str) -> str:
+    found = job.counted().get((circuit_id, None, test, stage))
+    return found.answer or "" if found is not None else ""
+
+
+def _no_trip(job: Job, circuit_id: str, stage: str) -> frozenset[str]:
+    return frozenset(
+        point
+        for (owner, point, test, at), reading in job.counted().items()
+        if (owner, test, at) == (circuit_id, "zs", stage) and reading.mode == "no_trip" and point is not None
+    )
+
+
+def _unsteady(job: Job, circuit_id: str, stage: str) -> frozenset[str]:
+    """Points where one dead test was read twice, neither taking the other's place, and the two disagree."""
+    read: dict[tuple[str, str], list[float]] = {}
+    for reading in job.standing():
+        if reading.circuit == circuit_id and reading.stage == stage and reading.point and reading.counts:
+            value = inf if reading.sign in ("open", ">") else reading.value
+            if reading.test in TEST_IS_OHM and value is not None:
+                read.setdefault((reading.point, reading.test), []).append(value)
+    return frozenset(
+        point
+        for (point, _), values in read.items()
+        if len(values) > 1 and max(values) - min(values) > UNSTEADY_OHM + 0.04 * min(values)
+    )
+
+
+TEST_IS_OHM = dict.fromkeys(("r1", "rn", "r2", "ln_cross", "le_cross", "r1_r2", "r1_rn", "zs", "cpc_to_met"), True)
 """Tests in which over range means open."""

@@ -108,7 +108,10 @@ def _slips(job: Job, circuit_id: str, reading: CircuitReading | None) -> NextSte
         points = job.points_of(circuit_id)
         first = name_of(job, points[0].id) if points else "the first point"
         return step_of(
-            f"At the board: swap the two pairs, then start again at {first}.", leading.sentence, "slip", test="ln_cross"
+            f"At the board: swap the two pairs, then start again at {first}.",
+            leading.sentence,
+            "slip",
+            test=leading.test or "ln_cross",
         )
     return None
 

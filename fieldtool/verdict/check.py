@@ -25,6 +25,10 @@ __all__ = [
 ]
 
 
+MOST_JUDGED = 3
+"""How many explanations a way is judged under."""
+
+
 def decide(findings: tuple[Finding, ...]) -> VerdictWord:
     """One word for a set of findings. Advice never counts; a stop outweighs what is missing, that a condition."""
     counted = {finding.outcome for finding in findings if not finding.advice}
@@ -124,13 +128,25 @@ def _with_overrides(findings: tuple[Finding, ...], job: Job, request: Request | 
 
 
 def readings_to_judge_under(reading: CircuitReading | None) -> tuple[CircuitReading | None, ...]:
-    """The explanations to judge under: the leading one, and the next where it still stands."""
-    if reading is None or len(reading.explanations) < 2 or reading.explanations[0].odds == "almost_certainly":
+    """The explanations to judge under: the leading one, and the best of every other class that still stands.
+
+    A sound ring with the same spurs is no other circuit, so it is not judged twice.
+    """
+    if reading is None or reading.leading is None:
         return (reading,)
-    first, second = reading.explanations[0], reading.explanations[1]
-    if second.group == first.group or not second.inferred:
-        return (reading,)
-    return (reading, replace(reading, explanations=(second, first, *reading.explanations[2:])))
+    out: list[CircuitReading | None] = [reading]
+    first = reading.leading
+    groups = {first.group}
+    for item in reading.explanations[1:]:
+        if item.group in groups or not item.stands or len(out) >= MOST_JUDGED:
+            continue
+        groups.add(item.group)
+        if item.healthy and first.healthy and item.inferred == first.inferred:
+            continue
+        rest = tuple(other for other in reading.explanations if other is not item)
+        nothing = item.id == "nothing_fits"
+        out.append(replace(reading, explanations=(item, *rest), nothing_fits=nothing))
+    return tuple(out)
 
 
 def found_for(job: Job, circuit_id: str, reading: CircuitReading | None, request: Request | None = None) -> AsFound:

@@ -79,13 +79,20 @@ def _reading(reading: CircuitReading) -> dict[str, Any]:
         "odds": leading.odds if leading is not None else None,
         "sentence": reading.sentence,
         "shown_ring": reading.shown_ring,
+        "nothing_fits": reading.nothing_fits,
         "explanations": [
             {
                 "id": item.id,
                 "group": item.group,
                 "odds": item.odds,
                 "sentence": item.sentence,
+                "stands": item.stands,
                 "where": list(item.where),
+                "reasoning": list(item.reasoning),
+                "predicted": [
+                    {"test": test, "place": place or None, "value": _number(value), "unit": "ohm"}
+                    for test, place, value in item.predicted
+                ],
                 "inferred": [
                     {
                         "what": one.what,
