@@ -39,6 +39,8 @@ SHEETS = {
     "leave": "Leave",
     "folder": "Folder",
     "recovered": "Recovered",
+    "reach": "ReachSheet",
+    "decide": "Decide",
 }
 
 

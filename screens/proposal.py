@@ -308,6 +308,9 @@ class Proposal(Form):
         if request is None:
             return
         ways, place = self.ways(), self.cursor - len(self.rows())
+        if 0 <= place < len(ways) and ways[place].outcome == "stop":
+            self._decide(ways[place])
+            return
         key = {"ring_between": ("old_link", "removed", "left"), "ring_at_point": ("box", "kept", "joint"),
                "ring_to_radial": ("loop", "joined", "opened"), "spur_at_board": ("fuse", "fcu", "none")}.get(
             ways[place].way if 0 <= place < len(ways) else "")  # fmt: skip
@@ -320,6 +323,17 @@ class Proposal(Form):
         made = Choice(key=name, value=second if now == first else first)  # type: ignore[arg-type]
         self.bench.say(self.put(choices=(*rest, made)) or f"{name.replace('_', ' ')}: {made.value}.")
         self.bench.judge()
+
+    def _decide(self, answer: WayAnswer) -> None:
+        """On a stopped way F6 asks a designer, where the standard leaves what stops it to one."""
+        broken = [f for f in answer.verdict.findings if f.outcome == "broken"] if answer.verdict is not None else []
+        finding = next((f for f in broken if f.designer_may_decide), None)
+        if finding is None:
+            self.bench.say("What stops this way is not left to a designer.")
+            return
+        sheet = self.bench.field.sheet("decide", self.bench)
+        sheet.finding = finding  # type: ignore[attr-defined]
+        self.bench.open_sheet(sheet)
 
     def next_missing(self) -> None:
         """``/``: the next question without an answer, else the ways."""

@@ -239,6 +239,19 @@ class VerdictPane(Pane):
         readings.stage = "after_work"  # type: ignore[attr-defined]
         self.bench.judge()
 
+    def _decide(self) -> None:
+        findings = self.findings()
+        if not findings:
+            self.bench.say("There is no finding to decide on.")
+            return
+        finding = findings[self.cursor]
+        if finding.outcome != "broken":
+            self.bench.say("Only a finding that stops the work is decided on: go to it first.")
+            return
+        sheet = self.bench.field.sheet("decide", self.bench)
+        sheet.finding = finding  # type: ignore[attr-defined]
+        self.bench.open_sheet(sheet)
+
     def _keep(self) -> None:
         visit, circuit = self.bench.visit, self.bench.circuit
         request_id = visit.request_of(circuit) if visit is not None and circuit is not None else None
@@ -261,6 +274,7 @@ class VerdictPane(Pane):
             Action("2", "work is done: read after work", self._done),
             Action("3", "give it up: leave it closed off", lambda: self._mark(abandoned_at=self._now())),
             Action("7", "keep this verdict", self._keep),
+            Action("9", "a designer decides on this finding", self._decide),
             Action("8", "write the record beside the job", self._record),
         )
 

@@ -410,6 +410,17 @@ class Workbench(Screen[None]):
             return
         self.open_sheet(self.field.sheet(name, self))
 
+    def propose_from(self, point: str) -> str:
+        """Go to the proposal with its cable starting at this point; what to say of it."""
+        self.show_pane("proposal")
+        pane = self.front
+        if pane.request() is None:  # type: ignore[attr-defined]
+            pane._begin("twin")  # type: ignore[attr-defined]
+        said: str = pane.put(at=point, attach="point", chosen_way=None)  # type: ignore[attr-defined]
+        pane.shown()
+        self.judge()
+        return said or f"From {self.job.point_name(point)}."
+
     def undo(self) -> None:
         """Take the last entry back, as a new entry."""
         said = self.visit.undo() if self.visit is not None else ""

@@ -88,6 +88,12 @@ def outlet(oid: str, metres: float, kind: str = "twin", **more: Any) -> Facts:
     }
 
 
+def written(path: Path, body: Facts) -> Path:
+    """A job file of these facts; its path."""
+    JobFile.create(path, made(body), NOON).close()
+    return path
+
+
 def empty_ring(path: Path, points: int) -> Path:
     """A job file of a ring of so many sockets of which nothing was read yet; its path."""
     body = facts("larch_row")
@@ -95,5 +101,4 @@ def empty_ring(path: Path, points: int) -> Path:
     body["points"] = [
         {"id": f"p{n}", "circuit": "c3", "kind": "twin", "name": f"P{n}", "walk_order": n} for n in range(1, points + 1)
     ]
-    JobFile.create(path, made(body), datetime(2026, 12, 1, 10, 0, tzinfo=UTC)).close()
-    return path
+    return written(path, body)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import re
 from pathlib import Path
 from typing import Any, TextIO
 
@@ -11,6 +12,7 @@ from fieldtool.job.job import HistoryEntry, Job
 from fieldtool.jobfile.opening import read_job
 from fieldtool.jobfile.problems import JobFileProblem
 from fieldtool.quantities.show import plain, shorten
+from fieldtool.record.private import LEFT_OUT, their_words
 
 __all__ = ["run"]
 
@@ -24,9 +26,13 @@ def run(args: list[str], out: TextIO, err: TextIO) -> int:
     parser = Parser("history", "Print who entered what when, and what it replaced.", EXAMPLE)
     parser.add_argument("file", help="the job file")
     parser.add_argument("--json", action="store_true", help="print JSON")
+    parser.add_argument("--without-customer", action="store_true", help="leave out what was entered of the customer")
     try:
         given = parser.parse_args(args)
         job = read_job(Path(given.file))
+        if given.without_customer:
+            found = their_words(job)
+            job = job.model_copy(update={"history": tuple(_left_out(entry, found) for entry in job.history)})
     except Usage as problem:
         err.write(f"fieldtool history: {problem}\n")
         return 2
@@ -43,6 +49,23 @@ def run(args: list[str], out: TextIO, err: TextIO) -> int:
     for entry in job.history:
         out.write(_line(job, entry) + "\n")
     return 0
+
+
+_THEIRS = ("site", "people/", "isolation/")
+"""What entries of the history can name the customer or say where they live."""
+
+
+def _left_out(entry: HistoryEntry, found: re.Pattern[str] | None) -> HistoryEntry:
+    """An entry without its content, where that can tell of the customer; that it was made stays."""
+    if entry.what.startswith(_THEIRS):
+        return entry.model_copy(update={"was": entry.was and _BARE, "now": entry.now and _BARE})
+    if found is None:
+        return entry
+    was, now = (text and found.sub(LEFT_OUT, text) for text in (entry.was, entry.now))
+    return entry.model_copy(update={"was": was, "now": now})
+
+
+_BARE = json.dumps({"content": LEFT_OUT})
 
 
 def _line(job: Job, entry: HistoryEntry) -> str:

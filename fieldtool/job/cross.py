@@ -6,6 +6,8 @@ from collections import Counter
 from collections.abc import Iterator
 from typing import TYPE_CHECKING
 
+from fieldtool.reference.look import cables, devices
+
 if TYPE_CHECKING:
     from fieldtool.job.job import Job
 
@@ -15,6 +17,7 @@ __all__ = ["cross_problems"]
 def cross_problems(job: Job) -> Iterator[str]:
     """One sentence for each thing that does not hang together, worst first; empty for a sound job."""
     yield from _ids(job)
+    yield from _keys(job)
     yield from _places(job)
     yield from _requests(job)
     yield from _readings(job)
@@ -37,6 +40,21 @@ def _ids(job: Job) -> Iterator[str]:
         if entry.n != place:
             yield f"history entry {place} is numbered {entry.n}; they run 1, 2, 3 without a gap"
             return
+
+
+def _keys(job: Job) -> Iterator[str]:
+    """Keys of the catalogues that no catalogue has: nothing could be worked out with them."""
+    known = {item.key for item in cables()}
+    named: list[tuple[str, str | None]] = [(f"circuits/{row.id}", row.cable) for row in job.circuits]
+    named += [(f"runs/{row.id}", row.cable) for row in job.runs]
+    named += [(f"requests/{row.id}", row.route.cable) for row in job.requests]
+    for where, key in named:
+        if key is not None and key not in known:
+            yield f"{where}: cable {key} is not in the catalogue; see fieldtool tables"
+    types = {item.key for item in devices()}
+    for circuit in job.circuits:
+        if circuit.device is not None and circuit.device.type not in types:
+            yield f"circuits/{circuit.id}: device {circuit.device.type} is not in the catalogue; see fieldtool tables"
 
 
 def _places(job: Job) -> Iterator[str]:

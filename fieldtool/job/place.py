@@ -53,7 +53,7 @@ class Person(Row):
     """Somebody who enters, allows or supervises."""
 
     name: Text
-    role: Literal["electrician", "supervisor", "occupier", "other"] = "electrician"
+    role: Literal["electrician", "supervisor", "designer", "occupier", "other"] = "electrician"
 
 
 class Instrument(Row):

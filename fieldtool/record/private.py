@@ -11,7 +11,7 @@ from pydantic.types import StringConstraints
 
 from fieldtool.job.job import Job
 
-__all__ = ["LEFT_OUT", "is_free_text", "without_customer"]
+__all__ = ["LEFT_OUT", "is_free_text", "their_words", "without_customer"]
 
 LEFT_OUT = "left out"
 """What stands where a customer's own words stood."""
@@ -26,10 +26,6 @@ def without_customer(job: Job) -> Job:
     The names of people who live there, and what they said when they gave permission, go too. The history is
     emptied: it holds everything that was ever typed. Catalogue keys and closed lists are never touched.
     """
-    hidden = [value for name in _SITE if len(value := str(getattr(job.site, name)).strip()) >= 3]
-    hidden += [line.strip() for value in hidden for line in re.split(r"[\n,]", value) if len(line.strip()) >= 4]
-    occupiers = [one for one in job.people if one.role == "occupier"]
-    hidden += [one.name.strip() for one in occupiers if len(one.name.strip()) >= 3]
     site = job.site.model_copy(update=dict.fromkeys(_SITE, "") | {"note": LEFT_OUT if job.site.note else ""})
     people = tuple(
         one.model_copy(update={"name": "the occupier", "note": ""}) if one.role == "occupier" else one
@@ -42,11 +38,22 @@ def without_customer(job: Job) -> Job:
     bare = job.model_copy(update={"site": site, "people": people, "isolation": isolation, "history": ()})
     # A fresh object: what the old one had worked out of itself does not come along.
     fresh = Job.model_construct(**{name: getattr(bare, name) for name in Job.model_fields})
-    if not hidden:
+    found = their_words(job)
+    if found is None:
         return fresh
-    words = sorted(set(hidden), key=len, reverse=True)
-    found = re.compile("|".join(rf"(?<!\w){re.escape(word)}(?!\w)" for word in words), re.IGNORECASE)
     return Job.model_construct(**{name: _masked(getattr(fresh, name), found) for name in Job.model_fields})
+
+
+def their_words(job: Job) -> re.Pattern[str] | None:
+    """What names the customer, the place and who lives there, wherever it is repeated; None where nothing is known."""
+    hidden = [value for name in _SITE if len(value := str(getattr(job.site, name)).strip()) >= 3]
+    hidden += [line.strip() for value in hidden for line in re.split(r"[\n,]", value) if len(line.strip()) >= 4]
+    occupiers = [one for one in job.people if one.role == "occupier"]
+    hidden += [one.name.strip() for one in occupiers if len(one.name.strip()) >= 3]
+    if not hidden:
+        return None
+    words = sorted(set(hidden), key=len, reverse=True)
+    return re.compile("|".join(rf"(?<!\w){re.escape(word)}(?!\w)" for word in words), re.IGNORECASE)
 
 
 def is_free_text(info: FieldInfo) -> bool:

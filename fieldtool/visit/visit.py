@@ -165,9 +165,17 @@ class Visit(Entering):
 
     def override(self, request_id: str, rule: str, place: str, by: str, reason: str) -> str:
         """Record a designer's decision on one finding, bound to the figures as they are."""
-        found = self.verdict(request_id)
-        finding = next((f for f in found.findings if (f.rule, f.place) == (rule, place)), None) if found else None
-        if finding is None or finding.outcome != "broken":
+        judged = [item.verdict for item in self.ways(request_id) if item.verdict is not None]
+        finding = next(
+            (
+                f
+                for verdict in judged
+                for f in verdict.findings
+                if (f.rule, f.place, f.outcome) == (rule, place, "broken")
+            ),
+            None,
+        )
+        if finding is None:
             return "There is nothing here for a designer to decide."
         if not finding.designer_may_decide:
             return "The standard leaves no choice here; nothing was recorded."

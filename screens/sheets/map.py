@@ -123,20 +123,8 @@ class MapSheet(Sheet):
         return Target(f"{name} {value}: Enter proposes from it", "none", lambda _: self._propose())
 
     def _propose(self) -> tuple[bool, str]:
-        visit, circuit = self.bench.visit, self.bench.circuit
         points = self.points()
-        if visit is None or circuit is None or not points:
-            return False, ""
-        point = points[self.cursor]
-        self.bench.close_sheets()
-        self.bench.show_pane("proposal")
-        pane = self.bench.front
-        if pane.request() is None:  # type: ignore[attr-defined]
-            pane._begin("twin")  # type: ignore[attr-defined]
-        said = pane.put(at=point, attach="point", chosen_way=None)  # type: ignore[attr-defined]
-        pane.shown()
-        self.bench.judge()
-        return True, said or f"From {visit.job.point_name(point)}."
+        return (True, self.bench.propose_from(points[self.cursor])) if points else (False, "")
 
     def move(self, step: int) -> None:
         """Up, down, left and right all go along the walk."""
@@ -151,10 +139,14 @@ class MapSheet(Sheet):
         """F6: the next quantity."""
         self.turn()
 
+    def next_missing(self) -> None:
+        """``/``: how far from each point, by every way."""
+        self.bench.open_named("reach")
+
     def back(self) -> None:
         """``-``: back."""
         self.bench.close_sheet()
 
     def hints(self) -> str:
         """The keys that matter here."""
-        return "up down choose a point   Enter proposes from it   F6 or F7 quantity   - back"
+        return "up down choose a point   Enter proposes from it   F6 quantity   / how far   - back"

@@ -294,6 +294,37 @@ async def test_markup_in_names_is_shown_as_it_was_typed(tmp_path: Path) -> None:
         assert "[red]door" in app.bench.front.render().plain  # type: ignore[union-attr]
 
 
+async def test_a_designer_decides_what_the_standard_leaves_to_one_and_the_decision_lapses(tmp_path: Path) -> None:
+    app = app_on(tmp_path)
+    async with app.run_test(size=(80, 24)) as pilot:
+        await settled(pilot, app)
+        bench = app.bench
+        assert bench is not None
+        visit = bench.visit
+        assert visit is not None
+        request = visit.job.requests[0]
+        hot = request.outlets[0].model_copy(update={"heating_or_cooking": "yes"})
+        assert visit.put("requests", request.model_copy(update={"outlets": (hot,), "chosen_way": None})) == ""
+        visit.ways(request.id)
+        await pilot.press("f4")
+        await pilot.pause(0.2)
+        pane = bench.front
+        ways = [item.way for item in pane.ways()]  # type: ignore[attr-defined]
+        spur = next(item for item in pane.ways() if item.way == "fused_spur")  # type: ignore[attr-defined]
+        assert spur.outcome == "stop"
+        pane.choose(len(pane.rows()) + ways.index("fused_spur"))  # type: ignore[attr-defined]
+        await pilot.press("f6")
+        await pilot.pause(0.1)
+        assert bench.front.key == "decide"
+        typed(app, "D. Signer\nfixed 1 kW towel rail, nothing else on it\n")
+        await pilot.pause(0.3)
+        assert visit.job.overrides[-1].reason.startswith("fixed 1 kW")
+        after = next(item for item in visit.ways(request.id) if item.way == "fused_spur")
+        assert after.outcome == "conditions"
+        assert after.verdict is not None
+        assert any("D. Signer" in line for line in after.verdict.conditions)
+
+
 async def test_giving_up_leaves_it_closed_off_and_on_the_record(tmp_path: Path) -> None:
     app = app_on(tmp_path)
     async with app.run_test(size=(80, 24)) as pilot:
