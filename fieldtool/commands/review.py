@@ -87,6 +87,7 @@ def review_one(folder: Path, now: datetime, found: Found) -> dict[str, Any]:
     from fieldtool.mishap import keep
     from fieldtool.quantities.show import plain
     from fieldtool.record.review import job_row, problem_row
+    from fieldtool.reference.load import ReferenceProblem
 
     name = plain(found.name)
     if found.problem is not None:
@@ -95,6 +96,8 @@ def review_one(folder: Path, now: datetime, found: Found) -> dict[str, Any]:
         return job_row(name, read_job(folder / found.name), now)
     except JobFileProblem as problem:
         return problem_row(name, problem.code, problem.sentence)
+    except ReferenceProblem as problem:
+        return problem_row(name, "not-in-the-tables", f"The job names what no table has: {problem}.")
     except Exception as problem:
         kept = keep(problem)
         where = f" What happened is kept in {kept.name} in the log folder." if kept is not None else ""

@@ -11,6 +11,7 @@ from fieldtool.job.request import Request
 from fieldtool.reference.used import Asked, figures_used
 from fieldtool.safety.after import finished
 from fieldtool.verdict.compare import compare, existing, judge
+from fieldtool.verdict.contract import proposed
 from fieldtool.verdict.predict import Held, held_against
 from fieldtool.ways.way import every_way
 
@@ -50,7 +51,7 @@ def gather(job: Job, circuit_id: str) -> CircuitAnswers:
     The figures used are those of the circuit as it stands and of the ways proposed, not of every way compared.
     """
     reading = explain(job, circuit_id)
-    asked = [item for item in job.requests if item.circuit == circuit_id and (item.outlets or item.swap is not None)]
+    asked = proposed(job, circuit_id)
     compared = {item.id: compare(job, item, reading) for item in asked}
     with figures_used() as used:
         stands = existing(job, circuit_id, reading)
@@ -59,14 +60,14 @@ def gather(job: Job, circuit_id: str) -> CircuitAnswers:
 
 
 def _proposal(job: Job, request: Request, ways: tuple[WayAnswer, ...], reading: CircuitReading) -> Proposal:
-    proposed = next((item for item in ways if item.way == request.chosen_way), None)
-    if proposed is None:
-        proposed = next((item for item in ways if item.applies and item.way != "leave_it"), ways[0])
+    answer = next((item for item in ways if item.way == request.chosen_way), None)
+    if answer is None:
+        answer = next((item for item in ways if item.applies and item.way != "leave_it"), ways[0])
     for way in every_way():
-        if way.key == proposed.way:
+        if way.key == answer.way:
             judge(job, request, way, reading)
-    predicted = proposed.verdict.predicted if proposed.verdict is not None else ()
+    predicted = answer.verdict.predicted if answer.verdict is not None else ()
     held = held_against(job, predicted, request.circuit)
     outside = sum(item.agrees is False for item in held)
-    left = finished(job, request, proposed.repeat_tests, outside)
-    return Proposal(request, ways, proposed, held, left)
+    left = finished(job, request, answer.repeat_tests, outside)
+    return Proposal(request, ways, answer, held, left)

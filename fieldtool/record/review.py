@@ -24,6 +24,7 @@ from fieldtool.verdict.best import by_way, standing
 from fieldtool.verdict.compare import existing
 from fieldtool.verdict.contract import exit_of, proposed
 from fieldtool.verdict.kept import Changed, changes, entries_since, last_kept
+from fieldtool.verdict.predict import held_against
 from fieldtool.ways.way import every_way
 
 __all__ = ["CONTRACT", "job_row", "problem_row"]
@@ -79,8 +80,7 @@ def _circuit(job: Job, circuit_id: str, reading: CircuitReading, now: datetime, 
 
 
 def _proposal(job: Job, request: Request, reading: CircuitReading) -> dict[str, Any]:
-    answer = standing(job, request, reading)
-    begun = request.work_begun_at or request.work_done_at or request.abandoned_at
+    answer = standing(job, request, reading, foretold=request.work_done_at is not None)
     return {
         "request": request.id,
         "circuit": request.circuit,
@@ -88,9 +88,18 @@ def _proposal(job: Job, request: Request, reading: CircuitReading) -> dict[str, 
         "way_words": answer.words,
         "way_chosen": answer.way == request.chosen_way,
         **_answered(answer),
-        "to_finish": list(finished(job, request, answer.repeat_tests)) if begun is not None else [],
+        "to_finish": _to_finish(job, request, answer),
         "kept": _kept(job, request, reading, answer),
     }
+
+
+def _to_finish(job: Job, request: Request, answer: WayAnswer) -> list[str]:
+    """What keeps work that was begun from being finished, readings outside what was foretold among it."""
+    if request.work_begun_at is None and request.work_done_at is None and request.abandoned_at is None:
+        return []
+    predicted = answer.verdict.predicted if answer.verdict is not None else ()
+    outside = sum(item.agrees is False for item in held_against(job, predicted, request.circuit))
+    return list(finished(job, request, answer.repeat_tests, outside))
 
 
 def _answered(answer: WayAnswer) -> dict[str, Any]:

@@ -7,6 +7,8 @@ what to expect after the work are not asked for.
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 from fieldtool.answers import CircuitReading, Finding, WayAnswer, worst_first
 from fieldtool.job.job import Job
 from fieldtool.job.request import Request
@@ -14,6 +16,7 @@ from fieldtool.rules.engine import Rule, catalogue, run_rule
 from fieldtool.rules.facts import Facts
 from fieldtool.verdict.check import check, edited, found_for, readings_to_judge_under, verdict_of
 from fieldtool.verdict.compare import RANK, answer_of, compare, worse_of
+from fieldtool.verdict.predict import predict
 from fieldtool.ways.way import Refusal, Way, every_way
 
 __all__ = ["by_way", "standing"]
@@ -22,21 +25,34 @@ _Place = tuple[int, bool, int, int]
 """Where a way stands among others: verdict, refused, work, order; the smallest first, as ``compare`` ranks."""
 
 
-def standing(job: Job, request: Request, reading: CircuitReading | None = None) -> WayAnswer:
-    """The answer for the way that was chosen, else for the best way that could serve; margins left out."""
+def standing(job: Job, request: Request, reading: CircuitReading | None = None, *, foretold: bool = False) -> WayAnswer:
+    """The answer for the way that was chosen, else for the best way that could serve; margins left out.
+
+    ``foretold`` adds what the tests after the work must read.
+    """
     chosen = next((way for way in every_way() if way.key == request.chosen_way), None)
-    if chosen is not None:
-        return by_way(job, request, chosen, reading)
-    found = _Search(job, request, reading).best()
-    return found if found is not None else compare(job, request, reading)[0]
+    if chosen is None:
+        found = _Search(job, request, reading).best()
+        if found is None:
+            return compare(job, request, reading)[0]
+        if not foretold:
+            return found
+        chosen = next(way for way in every_way() if way.key == found.way)
+    return by_way(job, request, chosen, reading, foretold=foretold)
 
 
-def by_way(job: Job, request: Request, way: Way, reading: CircuitReading | None = None) -> WayAnswer:
-    """One way's answer under the worse standing explanation; margins left out."""
+def by_way(
+    job: Job, request: Request, way: Way, reading: CircuitReading | None = None, *, foretold: bool = False
+) -> WayAnswer:
+    """One way's answer under the worse standing explanation; margins left out. ``foretold`` as for ``standing``."""
     answers = []
     for under in readings_to_judge_under(reading):
         facts = edited(job, request, way, found_for(job, request.circuit, under, request), reading=under)
-        answers.append(answer_of(way, facts) if isinstance(facts, Refusal) else answer_of(way, facts, check(facts)))
+        if isinstance(facts, Refusal):
+            answers.append(answer_of(way, facts))
+            continue
+        verdict = check(facts)
+        answers.append(answer_of(way, facts, replace(verdict, predicted=predict(facts)) if foretold else verdict))
     return worse_of(answers)
 
 

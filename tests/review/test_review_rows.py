@@ -283,6 +283,19 @@ def test_begun_work_tells_what_keeps_it_from_being_finished(tmp_path: Path) -> N
     assert "the work is not logged as done" in rows_of(tmp_path)["a.json"]["proposals"][0]["to_finish"]
 
 
+@pytest.mark.parametrize("zs, told", [(0.60, False), (1.90, True)])
+def test_a_reading_after_the_work_outside_what_was_foretold_is_told(zs: float, told: bool, tmp_path: Path) -> None:
+    def done(body: Facts) -> None:
+        row(body, "requests", "q1").update(work_done_at="2026-12-01T09:00:00Z", chosen_way="spur_at_point")
+        body["requests"][0]["outlets"] = [outlet("w1", 3)]
+        _at(body, "zs", {"w1": zs}, "after_work")
+
+    put(tmp_path, "a.json", done)
+    left = rows_of(tmp_path)["a.json"]["proposals"][0]["to_finish"]
+    assert any("outside what was foretold" in words for words in left) == told
+    assert "not handed over" in left
+
+
 def test_the_json_meets_its_schema_and_a_changed_one_does_not(tmp_path: Path) -> None:
     put(tmp_path, "kept.json", keep_verdict, lambda body: drop_readings(body, "polarity"))
     put(tmp_path, "none.json", lambda body: body.update(requests=[]))

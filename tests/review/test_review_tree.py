@@ -8,16 +8,20 @@ import json
 import os
 import subprocess
 import sys
+from datetime import datetime
 from pathlib import Path
+from typing import Any
 
 import pytest
 
 from fieldtool.commands import spread
 from fieldtool.commands.review_print import CSV_COLUMNS
+from fieldtool.job.job import Job
 from fieldtool.jobfile.opening import JobFile
 from fieldtool.jobfile.problems import JobFileProblem
 from fieldtool.jobfile.tree import job_files
 from fieldtool.quantities.show import cells
+from fieldtool.reference.load import ReferenceProblem
 from tests.jobs import Facts, outlet, sample
 from tests.review.trees import NOW, keep_verdict, put, reviewed, rows_of
 from tests.terminal import Terminal
@@ -145,11 +149,21 @@ def test_a_fault_of_the_tool_on_one_file_is_that_files_row(tmp_path: Path, monke
     put(tmp_path, "b.json", sample="mill_cottages")
     from fieldtool.record import review as rows
 
+    put(tmp_path, "c.json")
     real = rows.job_row
-    monkeypatch.setattr(rows, "job_row", lambda name, job, now: 1 / 0 if name == "a.json" else real(name, job, now))
+
+    def faulty(name: str, job: Job, now: datetime) -> dict[str, Any]:
+        if name == "a.json":
+            raise ZeroDivisionError
+        if name == "c.json":
+            raise ReferenceProblem("there is no cable flex_9")
+        return real(name, job, now)
+
+    monkeypatch.setattr(rows, "job_row", faulty)
     told = rows_of(tmp_path)
     assert told["a.json"]["problem"]["code"] == "not-judged"
     assert told["b.json"]["problem"] is None
+    assert told["c.json"]["problem"]["code"] == "not-in-the-tables"
     assert "ZeroDivisionError" in next(tmp_path.rglob("mishaps.log")).read_text()
 
 
