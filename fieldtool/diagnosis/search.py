@@ -26,6 +26,9 @@ LEAST_GAIN, ASK_AGAIN = 3.0, 7.0
 IN_A_ROW = 2.5
 """Standard deviations by which neighbours together must stand above the ring before a link is tried."""
 
+NEAR = 150.0
+"""Log weight within which the ring must lie of the best explanation for a link across it to be tried."""
+
 FAR = 8.0
 """Log weight by which a ring with spurs must lead everything without before the others are given spurs too."""
 
@@ -90,7 +93,12 @@ def search(frame: Frame, evidence: Evidence) -> list[Fitted]:
     shapes = [*simple(frame, evidence), *_likely_opens(frame, evidence)]
     first = sorted(fitted(frame, evidence, shapes), key=lambda item: -item.score)
     rings = [item for item in first if item.shape.id == "intact_ring"]
-    more = _spurs(frame, evidence, rings)
+    more = _spurs(frame, evidence, rings[:1])
+    if _settled(frame, rings[0], first[0], more):
+        first = [item for item in first if item not in rings[1:]]
+        rings = rings[:1]
+    else:
+        more += _spurs(frame, evidence, rings[1:])
     # The same ring from two beginnings is one explanation: only the better is kept, the other may begin a link.
     ways = [max((item for item in (ring, *more) if _way(item) == _way(ring)), key=_score) for ring in rings]
     ways.sort(key=_score, reverse=True)
@@ -110,7 +118,8 @@ def search(frame: Frame, evidence: Evidence) -> list[Fitted]:
     found = [*spurred, *first, *_single_points(frame, evidence, [*spurred, *best])]
     found.sort(key=lambda item: -item.score)
     for way in ways:
-        if len(frame.chain) >= 3 and way.score > found[0].score - 60 and (way.shape.spurs or _row(frame, way)):
+        near = len(frame.chain) >= 3 and way.score > found[0].score - NEAR
+        if near and (way.shape.spurs & set(frame.chain) or _row(frame, way)):
             found += bridges(frame, evidence, way, _excess(frame, way), fitted)
     return _once(sorted(found, key=_score, reverse=True))
 
